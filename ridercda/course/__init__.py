@@ -1,0 +1,1 @@
+"""The race route: import, cleaning, simulation and power plans."""

@@ -1,0 +1,1 @@
+"""One report model, written out as JSON and terminal tables."""

@@ -1,0 +1,1 @@
+"""Ride files to rides: readers, faults and repairs."""

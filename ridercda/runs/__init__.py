@@ -1,0 +1,1 @@
+"""Proposing and cutting runs and laps, and where along the venue each record lies."""

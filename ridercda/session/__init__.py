@@ -1,0 +1,1 @@
+"""The test day as a frozen document: nouns, pure edits, and the session.toml store."""

@@ -1,0 +1,1 @@
+"""Invented test days from a seed; shares no code with the estimator."""

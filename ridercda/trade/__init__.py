@@ -1,0 +1,1 @@
+"""Setups against courses: time saved, rank, chance, break-even."""

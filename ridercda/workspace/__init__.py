@@ -1,0 +1,1 @@
+"""The memo from files to estimate, keyed by content."""
