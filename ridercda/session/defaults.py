@@ -1,4 +1,4 @@
-"""Every default that moves a number, in one table; ``python -m ridercda.session.defaults`` prints it as Markdown.
+"""Every default that moves a number; ``python -m ridercda.session.defaults`` prints the table as Markdown.
 
 A key is the dotted key of session.toml where there is one. Values are in the SI unit named beside them.
 """
