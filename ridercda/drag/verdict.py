@@ -1,7 +1,8 @@
 """One ladder of words for certainty, used by the drag, trade and report layers alike.
 
-The ladder has one rule: a direction is only claimed when the 95 % interval leaves zero out, which is the same as
-saying that the chance of that direction is 97.5 % or more. Below that nothing is called faster or lower: the
+The ladder has one rule: a direction is only claimed when the interval that allows for all the comparisons made
+leaves zero out. With two setups that is the plain 95 % interval; with more, the joint one, so that among equal
+setups a false claim is made on one day in twenty at most. Below that nothing is called faster or lower: the
 chance is given as a number, so two pages can never disagree about the same pair.
 """
 
