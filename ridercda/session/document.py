@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from enum import StrEnum
 from types import MappingProxyType
 from typing import TypeVar
@@ -114,7 +114,9 @@ class Air:
     readings: tuple[AirReading, ...] = ()
 
     def over(self, below: Air) -> Air:
-        """Return this air laid over `below`, key by key."""
+        """Return this air laid over `below`, key by key; a pressure of either kind hides both kinds below."""
+        if self.pressure is not None or self.sea_level_pressure is not None:
+            below = replace(below, pressure=None, sea_level_pressure=None)
         return Air(
             **{
                 name: getattr(self, name) if getattr(self, name) not in (None, ()) else getattr(below, name)

@@ -59,22 +59,22 @@ def matches(old: Sequence[TomlTable], new: Sequence[TomlTable]) -> list[int | No
     """Return for each new item the index of the old one it continues, or None."""
     found: list[int | None] = [None] * len(new)
     free = dict(enumerate(old))
-    for rule in (_same_id, same):
+    for rule in (_same_id, same, _both_nameless):
         for i, item in enumerate(new):
             if found[i] is None:
-                found[i] = next((j for j, was in free.items() if rule(was, item)), None)
-                if (j := found[i]) is not None:
+                j = next((j for j, was in free.items() if rule(was, item)), None)
+                if j is not None:
+                    found[i] = j
                     del free[j]
-    for i, item in enumerate(new):
-        if found[i] is None and "id" not in item:
-            found[i] = next((j for j, was in free.items() if "id" not in was), None)
-            if (j := found[i]) is not None:
-                del free[j]
     return found
 
 
 def _same_id(a: TomlTable, b: TomlTable) -> bool:
     return "id" in a and "id" in b and a["id"] == b["id"]
+
+
+def _both_nameless(a: TomlTable, b: TomlTable) -> bool:
+    return "id" not in a and "id" not in b
 
 
 def _tables(value: TomlValue) -> list[TomlTable] | None:
@@ -124,9 +124,8 @@ class _Patcher:
     def array(self, path: Path, old: list[TomlTable], new: list[TomlTable]) -> None:
         found = matches(old, new)
         kept = [j for j in found if j is not None]
-        for j in range(len(old)):
-            if j not in kept:
-                self.remove((*path, j))
+        for gone in sorted(set(range(len(old))) - set(kept)):
+            self.remove((*path, gone))
         if kept != sorted(kept):
             self.reorder([(*path, j) for j in kept])
         self.fresh[path] = len(old)
@@ -342,7 +341,7 @@ def _changed_value(text: str, old: TomlValue, new: TomlValue) -> str:
     import tomlkit
 
     document = tomlkit.parse(f"x = {text}\n")
-    _update_inline(document["x"], old, new)  # type: ignore[arg-type]
+    _update_inline(document["x"], old, new)
     result = tomlkit.dumps(document).removeprefix("x = ").removesuffix("\n")
     return result if same(tomllib.loads(f"x = {result}")["x"], new) else _rendered(new)
 
