@@ -1,1 +1,1 @@
-"""Invented test days from a seed; shares no code with the estimator."""
+"""Invented test days from a seed: venue, wind, rider, sensors, faults. Shares no code with the estimator."""
