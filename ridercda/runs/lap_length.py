@@ -1,0 +1,100 @@
+"""How far round a loop is, from fixes that come back to where they were."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+import numpy.typing as npt
+
+FloatArray = npt.NDArray[np.float64]
+
+CLOSE = 25.0  # [m] two passes of one place lie within this
+SHORTEST = 120.0  # [m] no venue is shorter once round
+
+
+def lap_from_fixes(
+    paths: Sequence[tuple[FloatArray, FloatArray, FloatArray]], expected: float | None
+) -> float | None:
+    """Return the distance ridden after which paths are back at the same place; None when they never are.
+
+    Parameters
+    ----------
+    paths : sequence of (travelled, east, north)
+        Each of shape (n,), distance never falling, NaN without a fix. [m]
+    expected : float, optional
+        A lap length known beforehand; looked for within 5 %. [m]
+
+    Returns
+    -------
+    float or None
+        In the distance as recorded. [m]
+
+    Notes
+    -----
+    For each lag, the share of points that lie within 25 m of the point one lag on. The first lag whose share is
+    nearly the highest is the lap; it is refined by the least median distance.
+    """
+    spacing = 10.0
+    gridded = [g for g in (_on_grid(*path, spacing) for path in paths) if g is not None]
+    if not gridded:
+        return None
+    longest = max(x.size for x, _ in gridded)
+    if expected is not None:
+        lags = np.arange(int(0.95 * expected / spacing), int(1.05 * expected / spacing) + 2)
+    else:
+        lags = np.arange(int(SHORTEST / spacing), int(0.9 * longest) + 1)
+    lags = lags[(lags > 0) & (lags < longest)]
+    if lags.size == 0:
+        return None
+    # Every point of every path would be more than is needed on a long day.
+    stride = max(1, sum(x.size for x, _ in gridded) // 1500)
+    share = np.zeros(lags.size)
+    for i, lag in enumerate(lags):
+        close = total = 0
+        for x, y in gridded:
+            if x.size > lag:
+                d2 = (x[lag::stride] - x[:-lag:stride]) ** 2 + (y[lag::stride] - y[:-lag:stride]) ** 2
+                close += int((d2 < CLOSE**2).sum())
+                total += d2.size
+        # A few points at the far end of the longest path must not decide.
+        share[i] = close / max(total, 300.0 / spacing / stride)
+    best = float(share.max())
+    if best < 0.3:
+        return None
+    start = int(np.argmax(share >= 0.8 * best))
+    stop = start
+    while stop + 1 < share.size and share[stop + 1] >= 0.8 * best:
+        stop += 1
+    middle = 0.5 * float(lags[start] + lags[stop]) * spacing
+    fine = np.arange(middle - 40.0, middle + 40.5, 1.0)
+    return _refined(gridded, spacing, fine[fine > 0.5 * SHORTEST])
+
+
+def _on_grid(
+    travelled: FloatArray, east: FloatArray, north: FloatArray, spacing: float
+) -> tuple[FloatArray, FloatArray] | None:
+    good = np.isfinite(east) & np.isfinite(north)
+    if good.sum() < 4:
+        return None
+    s, first = np.unique(travelled[good], return_index=True)
+    grid = np.arange(s[0], s[-1], spacing)
+    if grid.size < 4:
+        return None
+    return np.interp(grid, s, east[good][first]), np.interp(grid, s, north[good][first])
+
+
+def _refined(gridded: Sequence[tuple[FloatArray, FloatArray]], spacing: float, lags: FloatArray) -> float:
+    median = np.empty(lags.size)
+    for i, lag in enumerate(lags):
+        whole = int(lag // spacing)
+        f = lag / spacing - whole
+        gaps = []
+        for x, y in gridded:
+            if x.size > whole + 1:
+                xa = x[whole:-1] * (1 - f) + x[whole + 1 :] * f
+                ya = y[whole:-1] * (1 - f) + y[whole + 1 :] * f
+                stride = max(1, xa.size // 300)
+                gaps.append(np.hypot(xa - x[: xa.size], ya - y[: ya.size])[::stride])
+        median[i] = np.median(np.concatenate(gaps)) if gaps else np.inf
+    return float(lags[int(np.argmin(median))])
