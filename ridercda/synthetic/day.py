@@ -171,10 +171,8 @@ def _targets(spec: DaySpec, setups: tuple[SetupSpec, ...]) -> FloatArray:
 
 
 def _expected_duration(spec: DaySpec, place: Place, targets: FloatArray) -> float:
-    if spec.rider.holds is Holds.SPEED:
-        speeds = targets
-    else:
-        speeds = np.cbrt(targets * 0.85 / (0.6 * 0.27))  # air takes some 85 %
+    # Held power: air takes some 85 %.
+    speeds = targets if spec.rider.holds is Holds.SPEED else np.cbrt(targets * 0.85 / (0.6 * 0.27))
     between = spec.pause + (spec.roll_out + spec.approach) / 4.0 if place.turns_back else 0.0
     if not place.turns_back:
         between = spec.easy_time + spec.settle_time + (place.gate / 8.0)
@@ -185,9 +183,9 @@ def _surroundings(
     spec: DaySpec, steps: int, expected: float, of_wind: np.random.Generator, of_rider: np.random.Generator
 ) -> _Surroundings:
     step = spec.step
-    hours = np.arange(steps) * step / 3600.0
+    hours = np.arange(steps, dtype=float) * step / 3600.0
     middle = 0.5 * expected
-    temperature = spec.air.temperature + spec.air.warming_per_hour * (hours - middle / 3600.0)
+    temperature = np.asarray(spec.air.temperature + spec.air.warming_per_hour * (hours - middle / 3600.0))
     if spec.air.warming_per_hour:
         knots = np.linspace(0, steps - 1, 200)
         density = np.interp(

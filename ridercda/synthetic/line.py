@@ -155,10 +155,8 @@ def line_from_curvature(
     def along(part: FloatArray) -> FloatArray:
         return np.concatenate(([0.0], np.cumsum(0.5 * (part[1:] + part[:-1]) * step)))
 
-    if closed:
-        rise = (np.roll(height, -1) - np.roll(height, 1)) / (2 * step)
-    else:
-        rise = np.gradient(height, step)
+    beyond = (height[-1], height[0]) if closed else (2 * height[0] - height[1], 2 * height[-1] - height[-2])
+    rise = (np.append(height[1:], beyond[1]) - np.insert(height[:-1], 0, beyond[0])) / (2 * step)
     bend = np.abs(curvature)
     return Line(
         step=step,

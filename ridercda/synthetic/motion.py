@@ -1,9 +1,10 @@
 """The equation of motion: rider and bike along a line in gusty air, integrated as energy.
 
-The state is the total energy of rider and bike: motion of the centre of mass, spin of the wheels, height of the
-centre of mass above ground that rises, falls and is leaned over in bends. Its rate is the power at the wheel less
-what air, tyres and bearings take; Heun's rule steps it, so the power balance closes to rounding. Speed follows
-from the energy. Martin et al. 1998 (J. Appl. Biomech. 14:276-291, from memory) is the source of the bearing term.
+The state is the total energy of rider and bike: motion of the centre of mass, spin of the wheels, height of
+the centre of mass above ground that rises, falls and is leaned over in bends. Its rate is the power at the
+wheel less what air, tyres and bearings take; Heun's rule steps it, so the power balance closes to rounding.
+Speed follows from the energy. Martin et al. 1998 (J. Appl. Biomech. 14:276-291, from memory) is the source of
+the bearing term.
 """
 
 from __future__ import annotations
@@ -74,11 +75,8 @@ def _lean(speed: float, curvature: float, height: float) -> tuple[float, float, 
 def _energy(speed: float, here: FloatArray, mass: float, spin: float, height: float) -> float:
     _, cosine, ratio = _lean(speed, here[CURVATURE], height)
     body = speed * ratio
-    return (
-        0.5 * mass * body * body
-        + 0.5 * spin * speed * speed
-        + mass * GRAVITY * (here[HEIGHT] + height * cosine)
-    )
+    moving = 0.5 * mass * body * body + 0.5 * spin * speed * speed
+    return moving + mass * GRAVITY * float(here[HEIGHT] + height * cosine)
 
 
 @njit(cache=True, nogil=True, inline="always")
@@ -97,7 +95,7 @@ def _speed(energy: float, guess: float, here: FloatArray, mass: float, spin: flo
 
 
 @njit(cache=True, nogil=True)
-def ride(  # noqa: PLR0913, PLR0915
+def ride(
     dt: float,
     samples: FloatArray,
     line_step: float,
@@ -148,8 +146,8 @@ def ride(  # noqa: PLR0913, PLR0915
     """Ride the day; fill the arrays after `settle_time` and return the steps used, -1 if they were too few.
 
     Power, winds and braking are means over a step; position, distance and air speed stand at its end.
-    `balance` holds, per step, the energy before, the energy after, and the work of wheel power less losses and
-    brakes. `lap_crossings` has shape (runs, laps + 1). [s]
+    `balance` holds, per step, the energy before, the energy after, and the work of wheel power less losses
+    and brakes. `lap_crossings` has shape (runs, laps + 1). [s]
     """
     steps = len(wobble) - 1
     count = runs.shape[0]
@@ -179,7 +177,7 @@ def ride(  # noqa: PLR0913, PLR0915
     for i in range(steps):
         # What the rider does now.
         command = easy_power
-        if phase == SETTLE or phase == RUN:
+        if phase in (SETTLE, RUN):
             target = targets[run, min(lap_now, laps - 1)]
             if holds_speed:
                 slip = target - speed
@@ -189,7 +187,7 @@ def ride(  # noqa: PLR0913, PLR0915
             else:
                 command = target * wobble[i] * (1.0 + grade_response * here[GRADE] * direction)
         stop = 0.0
-        if phase == STAND or phase == DONE:
+        if phase in (STAND, DONE):
             command = 0.0
         if phase == ROLL and place >= ends_at + roll_out - speed * speed / 3.0:
             stop = 1.5
@@ -225,7 +223,7 @@ def ride(  # noqa: PLR0913, PLR0915
             area = cda * drag[i] * (1.0 + effort_slope * (pedal - effort_reference) / 100.0)
             wheel = pedal * efficiency
             if fresh:
-                loss, along = _loss(
+                loss, _ = _loss(
                     speed, here, direction, wind_east[i], wind_north[i], push[i], area, density[i],
                     crr[tyres, i], mass, mass_height, speed_slope, speed_reference, yaw_square,
                 )  # fmt: skip
@@ -235,9 +233,10 @@ def ride(  # noqa: PLR0913, PLR0915
             _look_up(samples, guess_place, line_step, closed, there)
             there[CURVATURE] /= 1.0 + there[CURVATURE] * wander[i + 1]
             guess = _speed(energy + dt * (wheel - loss), speed, there, mass, spin, mass_height)
-            new_loss, along = _loss(
+            new_loss, _ = _loss(
                 guess, there, direction, wind_east[i + 1], wind_north[i + 1], push[i + 1], area,
-                density[i + 1], crr[tyres, i + 1], mass, mass_height, speed_slope, speed_reference, yaw_square,
+                density[i + 1], crr[tyres, i + 1], mass, mass_height, speed_slope, speed_reference,
+                yaw_square,
             )  # fmt: skip
             work = dt * (wheel - 0.5 * (loss + new_loss))
             energy += work
@@ -262,11 +261,11 @@ def ride(  # noqa: PLR0913, PLR0915
                 work -= braked[i]
                 energy = slower
             speed = new_speed
-            loss, along_end = _loss(
+            loss, air_along[i] = _loss(
                 speed, here, direction, wind_east[i + 1], wind_north[i + 1], push[i + 1], area,
-                density[i + 1], crr[tyres, i + 1], mass, mass_height, speed_slope, speed_reference, yaw_square,
+                density[i + 1], crr[tyres, i + 1], mass, mass_height, speed_slope, speed_reference,
+                yaw_square,
             )  # fmt: skip
-            air_along[i] = along_end
             balance[i, 1] = energy
             balance[i, 2] = work
         position[i] = place
@@ -321,7 +320,7 @@ def ride(  # noqa: PLR0913, PLR0915
             since += dt
             if since > 5.0:
                 return i + 1
-        if (phase == STAND or phase == SETTLE) and since == 0.0 and run < count:
+        if phase in (STAND, SETTLE) and since == 0.0 and run < count:
             mass = runs[run, MASS]
             tyres = int(runs[run, TYRES])
             cda = runs[run, CDA]

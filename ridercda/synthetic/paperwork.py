@@ -15,8 +15,8 @@ from ridercda.session.document import (
     MeterLocation,
     MeterSides,
     PowerMeter,
-    Rider,
     RideEntry,
+    Rider,
     Run,
     Session,
     Setup,
@@ -31,7 +31,7 @@ FloatArray = npt.NDArray[np.float64]
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Crossings:
-    """Times at which the line was crossed, and at which the button was pressed; shape (runs, laps + 1). [s]"""
+    """When the line was crossed, and when the button was pressed for it; shape (runs, laps + 1). [s]"""
 
     exact: FloatArray
     pressed: FloatArray

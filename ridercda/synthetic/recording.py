@@ -98,7 +98,7 @@ def record(
     interval = sensors.interval
     ends = motion.at_record(motion.distance, interval)
     count = len(ends)
-    time = np.arange(count) * interval
+    time: FloatArray = np.arange(count, dtype=float) * interval
     channels = {"power": _power(motion, sensors, calibrations.power_scale, rng)}
     if sensors.speed.source is not SpeedSource.NONE:
         channels["speed"], channels["distance"] = _speed(motion, sensors.speed, interval, rng)
@@ -130,7 +130,7 @@ def _power(motion: Motion, sensors: SensorSpec, scale: float, rng: np.random.Gen
         power = motion.per_record(motion.power, interval)
     else:
         work = np.concatenate(([0.0], np.cumsum(motion.power) * motion.step))
-        ends = np.arange(1, len(motion.power) // round(interval / motion.step) + 1) * interval - spec.lag
+        ends = _interval_ends(len(motion.power) // round(interval / motion.step), interval) - spec.lag
         window = min(interval, 1.0)
         if spec.averaging is PowerAveraging.RECORD:
             power = (_work_at(work, ends, motion.step) - _work_at(work, ends - window, motion.step)) / window
@@ -150,6 +150,11 @@ def _power(motion: Motion, sensors: SensorSpec, scale: float, rng: np.random.Gen
     power = power * (1 + scale) * (1 + spec.noise * rng.standard_normal(count)) + offset
     power = np.maximum(power, 0.0)
     return _rounded(power, spec.resolution)
+
+
+def _interval_ends(count: int, interval: float) -> FloatArray:
+    """Return when each record interval of a day ends, since its first moment. [s]"""
+    return np.arange(1, count + 1, dtype=float) * interval
 
 
 def _work_at(work: FloatArray, time: FloatArray, step: float) -> FloatArray:

@@ -1,4 +1,4 @@
-"""Instruments to invent: power meter, wheel or GPS speed, position, barometer, thermometer, air-speed probe."""
+"""Instruments to invent: power, wheel or GPS speed, position, barometer, thermometer, air-speed probe."""
 
 from __future__ import annotations
 
@@ -102,8 +102,8 @@ class BarometerSpec:
 class AirProbeSpec:
     """An air-speed probe at the rider's height, reading speed along the bike.
 
-    `factor_sd` is the spread of its calibration between days, `setup_factor_sd` the further one between setups,
-    `noise` the standard deviation of each record. [1, 1, m/s]
+    `factor_sd` is the spread of its calibration between days, `setup_factor_sd` the further one between
+    setups, `noise` the standard deviation of each record. [1, 1, m/s]
     """
 
     factor_sd: float = 0.02

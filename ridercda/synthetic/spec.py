@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from enum import StrEnum
 
 from ridercda.synthetic.faults import FaultSpec
@@ -122,16 +122,16 @@ class DaySpec:
     """
 
     name: str = "Invented day"
-    venue: VenueSpec = LoopVenue()
+    venue: VenueSpec = field(default_factory=LoopVenue)
     wind: WindSpec = WINDY
-    rider: RiderSpec = RiderSpec()
+    rider: RiderSpec = field(default_factory=RiderSpec)
     tyres: tuple[TyreSpec, ...] = (TyreSpec(),)
     setups: tuple[SetupSpec, ...] = THREE_SETUPS
     order: str | tuple[str, ...] = "ABCCBAABCCBA"
     laps: int = 2
     targets: tuple[float, ...] = (150.0, 220.0, 300.0)
     cycle: Cycle = Cycle.RUN
-    sensors: SensorSpec = SensorSpec()
+    sensors: SensorSpec = field(default_factory=SensorSpec)
     air: AirSpec = AirSpec()
     faults: tuple[FaultSpec, ...] = ()
     bike_mass: float = 8.5

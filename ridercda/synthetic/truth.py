@@ -18,9 +18,9 @@ class RunTruth:
     """One run as it was.
 
     Times are on the ride's clock. `cda` is the run's own at zero yaw and the reference speed and effort, its
-    drift and restlessness averaged in; `wind_east`, `wind_north` are the mean velocity of the air (towards) at
-    the rider, gusts and shelter averaged in; `gust_sd` is the standard deviation about it, both components
-    pooled. `places` and `times` say where along the lap the wheel was at each record of the run.
+    drift and restlessness averaged in; `wind_east`, `wind_north` are the mean velocity of the air (towards)
+    at the rider, gusts and shelter averaged in; `gust_sd` is the standard deviation about it, both components
+    pooled.
     """
 
     id: str
@@ -62,7 +62,7 @@ class Truth:
     gust_time: float  # [s]
     line: Line
     line_start: float  # of the start line along `line` [m]
-    lap_length: float  # as the wheel rides it [m]
+    lap_length: float  # of the line; a rider who wanders outside it on a track rides further [m]
     power_scale: float  # relative error of the meter
     circumference_factor: float  # recorded over true distance
     efficiency: float

@@ -180,7 +180,7 @@ def shelter(spec: WindSpec, samples: int, length: float, rng: np.random.Generato
 def reported_wind(
     spec: WindSpec, mean_east: float, mean_north: float, rng: np.random.Generator
 ) -> tuple[float, float]:
-    """Return speed and direction (from) as the day's weather report gives them at its own height. [m/s, rad]"""
+    """Return speed and direction (from) of the day's weather report, at its own height. [m/s, rad]"""
     report = spec.report or WeatherReport()
     speed = math.hypot(mean_east, mean_north) / float(log_profile(1.2, report.height, report.roughness))
     blows_from = math.atan2(-mean_east, -mean_north) + rng.normal(0, report.from_error)
@@ -216,7 +216,7 @@ def _unit_gusts(spec: GustSpec, steps: int, step: float, rng: np.random.Generato
 
 def _kaimal(time: float, steps: int, step: float, rng: np.random.Generator) -> FloatArray:
     # S(f) = 4 T / (1 + 6 f T)^(5/3) in the rider's time: unit variance, and S(0)/4 = T is the integral scale
-    # (form of Kaimal et al., Q. J. R. Meteorol. Soc. 98, 563-589, 1972, as IEC 61400-1 writes it; from memory).
+    # (Kaimal et al., Q. J. R. Meteorol. Soc. 98, 563-589, 1972, as IEC 61400-1 writes it; from memory).
     n = 1 << (steps - 1).bit_length()  # a power of two: quick, and longer than the day
     frequency = np.fft.rfftfreq(n, step)
     density = 4 * time / (1 + 6 * frequency * time) ** (5 / 3)
