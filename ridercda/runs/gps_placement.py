@@ -19,10 +19,10 @@ from ridercda.watch import NO_WATCH, Watch
 
 FloatArray = npt.NDArray[np.float64]
 
-ROUNDS = 4  # of drawing the line and placing the runs on it
+ROUNDS = 3  # of drawing the line and placing the runs on it
 STRAY = 35.0  # [m] mean distance from the line beyond which a run was ridden elsewhere
 GIVEN_LENGTH_ERROR = 1e-3  # relative standard error of a lap length as people measure it; common practice
-DRAWN_LENGTH_ERROR = 1.5e-3  # the same of a line drawn through fixes, besides their noise; common practice
+DRAWN_LENGTH_ERROR = 1e-3  # the same of a line drawn through fixes, besides their noise; common practice
 TURN_DOUBT = 2.0  # [m] how differently two U-turns at one end are ridden
 
 
@@ -78,7 +78,9 @@ def place_loop_by_fixes(
     lying = _find(runs, line, notes)
     line, lying, scales = _settle(line, lying, watch)
     zero = _gate_station(lying[0], scales)
-    stretch, error, basis = _true_scale(line.length, line.arc_length, lap_length, _fix_error(lying), notes)
+    stretch, error, basis = _true_scale(
+        line.length, line.arc_length, lap_length, _fix_error(lying, line), notes
+    )
     return _told(line, lying, scales, (zero, stretch, error, basis), lap=True, notes=notes)
 
 
@@ -98,7 +100,7 @@ def place_road_by_fixes(
     Returns
     -------
     Placement or None
-        Station 0 is the near end: the U-turn at which runs come back to the start, or the lowest station ridden.
+        Station 0 is the near end: where runs turn to go out again, else the lowest station ridden.
     """
     notes: list[str] = []
     guide = max(runs, key=lambda run: (run.length, run.run.id))
@@ -116,7 +118,7 @@ def place_road_by_fixes(
     drawn = line.arc_length / line.length * (far - near)
     turned_at_both = near > -np.inf and _turns_at_both_ends(lying, scales, near, far)
     known = lap_length / 2 if lap_length is not None and turned_at_both else None
-    stretch, error, basis = _true_scale(far - near, drawn, known, _fix_error(lying), notes)
+    stretch, error, basis = _true_scale(far - near, drawn, known, _fix_error(lying, line), notes)
     placement = _told(line, lying, scales, (near, stretch, error, basis), lap=False, notes=notes)
     return replace(placement, length=(far - near) * stretch, length_error=error * (far - near) * stretch)
 
@@ -240,12 +242,19 @@ def _redrawn(
     return draw_line(s, x, y, start=low, length=high - low, closed=False)
 
 
-def _fix_error(lying: Sequence[_Lying]) -> float:
-    """Return the relative error that the fixes' own noise leaves in the length of the drawn line."""
-    travelled = sum(run.traced.length for run in lying)
+def _fix_error(lying: Sequence[_Lying], line: ReferenceLine) -> float:
+    """Return the relative error that the fixes' own noise leaves in the length of the drawn line.
+
+    Fixes of a minute count as one draw. Pushed outward by a metre, a closed line grows by 2 pi metres; an
+    open one moves at its two ends.
+    """
     noise = float(np.median([run.noise for run in lying]))
-    # Along the line the noise of half a minute is one draw; its steps lengthen a line drawn through few passes.
-    return noise * np.sqrt(2.0) / max(travelled, 1.0)
+    draws = sum(float(np.ptp(run.traced.time)) for run in lying) / (2 * FIX_TIME)
+    spread = noise / np.sqrt(max(draws, 1.0))
+    if not line.closed:
+        passes = sum(run.traced.length for run in lying) / max(line.length, 1.0)
+        return float(np.sqrt(2.0) * noise / np.sqrt(max(passes, 1.0)) / line.length)
+    return float(2 * np.pi * spread / line.length)
 
 
 def _true_scale(

@@ -15,7 +15,7 @@ FloatArray = npt.NDArray[np.float64]
 GATE = 30.0  # [m] a fix farther from the line says nothing of the station
 WANDER = 1e-3  # [m^2/m] variance by which the ridden path and the line part per metre: 1 m a kilometre
 FIX_TIME = 30.0  # [s] over which the errors of fixes stay alike; common practice
-FIX_NOISE = (0.5, 3.0, 15.0)  # [m] least, first guess and greatest standard deviation of a fix
+FIX_NOISE = (0.5, 15.0)  # [m] least and greatest standard deviation of a fix along the line
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -176,27 +176,38 @@ def smooth_offset(
     Notes
     -----
     A random walk in distance seen through fixes whose errors stay alike for half a minute, smoothed in both
-    directions (H. E. Rauch, F. Tung and C. T. Striebel, AIAA J. 3(8), 1445-1450, 1965, doi:10.2514/3.3166). The fixes'
-    correlated error is counted as a white one of the same mean over a minute and more, and wild fixes weigh
-    less (Huber). Two rounds set the noise from what the fixes leave.
+    directions (H. E. Rauch, F. Tung and C. T. Striebel, Maximum likelihood estimates of linear dynamic
+    systems, AIAA J. 3(8), 1445-1450, 1965, doi:10.2514/3.3166). The fixes' correlated error is counted as a
+    white one of the same mean over a minute and more, and wild fixes weigh less (Huber). Three rounds set the
+    noise from what the fixes leave.
     """
-    known = np.isfinite(offset)
-    if not known.any():
+    if not np.isfinite(offset).any():
         return None
     dt = np.diff(time, prepend=time[0] - 1.0)
     walk = WANDER * np.diff(travelled, prepend=travelled[:1]) + doubt**2
-    least, noise, greatest = FIX_NOISE
-    weight = np.ones(offset.size)
     inflate = np.maximum(2 * FIX_TIME / np.clip(dt, 0.1, 2 * FIX_TIME), 1.0)
-    value = np.full(offset.size, float(np.median(offset[known])))
-    variance = value
-    for _ in range(3):
-        left = np.where(known, offset - value, 0.0)
-        spread = 1.4826 * float(np.median(np.abs(left[known])))
-        noise = min(max(spread, least), greatest)
-        weight = np.minimum(1.0, 2.0 * noise / np.maximum(np.abs(left), 1e-9))
-        value, variance = _smooth(np.where(known, offset, np.nan), noise**2 * inflate / weight, walk)
+    value, variance, noise = _smooth_robustly(offset, inflate, walk, *FIX_NOISE)
     return Offset(value, np.sqrt(variance), noise)
+
+
+@njit(cache=True, nogil=True)
+def _smooth_robustly(
+    offset: FloatArray, inflate: FloatArray, walk: FloatArray, least: float, greatest: float
+) -> tuple[FloatArray, FloatArray, float]:
+    known = np.flatnonzero(np.isfinite(offset))
+    value = np.full(offset.size, np.median(offset[known]))
+    variance = value
+    noise = least
+    seen_noise = np.ones(offset.size)
+    for _ in range(3):
+        left = np.abs(offset[known] - value[known])
+        noise = min(max(1.4826 * np.median(left), least), greatest)
+        for i in range(known.size):
+            k = known[i]
+            weight = min(1.0, 2.0 * noise / max(left[i], 1e-9))
+            seen_noise[k] = noise**2 * inflate[k] / weight
+        value, variance = _smooth(offset, seen_noise, walk)
+    return value, variance, noise
 
 
 @njit(cache=True, nogil=True)

@@ -6,8 +6,10 @@ from collections.abc import Sequence
 
 import numpy as np
 import numpy.typing as npt
+from numba import njit
 
 FloatArray = npt.NDArray[np.float64]
+IntArray = npt.NDArray[np.int64]
 
 CLOSE = 25.0  # [m] two passes of one place lie within this
 SHORTEST = 120.0  # [m] no venue is shorter once round
@@ -32,8 +34,8 @@ def lap_from_fixes(
 
     Notes
     -----
-    For each lag, the share of points that lie within 25 m of the point one lag on. The first lag whose share is
-    nearly the highest is the lap; it is refined by the least median distance.
+    For each lag, the share of points that lie within 25 m of the point one lag on. The first lag whose share
+    is nearly the highest is the lap; it is refined by the least median distance.
     """
     spacing = 10.0
     gridded = [g for g in (_on_grid(*path, spacing) for path in paths) if g is not None]
@@ -49,16 +51,12 @@ def lap_from_fixes(
         return None
     # Every point of every path would be more than is needed on a long day.
     stride = max(1, sum(x.size for x, _ in gridded) // 1500)
-    share = np.zeros(lags.size)
-    for i, lag in enumerate(lags):
-        close = total = 0
-        for x, y in gridded:
-            if x.size > lag:
-                d2 = (x[lag::stride] - x[:-lag:stride]) ** 2 + (y[lag::stride] - y[:-lag:stride]) ** 2
-                close += int((d2 < CLOSE**2).sum())
-                total += d2.size
-        # A few points at the far end of the longest path must not decide.
-        share[i] = close / max(total, 300.0 / spacing / stride)
+    close = np.zeros(lags.size)
+    total = np.zeros(lags.size)
+    for x, y in gridded:
+        _count_close(x, y, lags, stride, close, total)
+    # A few points at the far end of the longest path must not decide.
+    share = close / np.maximum(total, 300.0 / spacing / stride)
     best = float(share.max())
     if best < 0.3:
         return None
@@ -67,7 +65,7 @@ def lap_from_fixes(
     while stop + 1 < share.size and share[stop + 1] >= 0.8 * best:
         stop += 1
     middle = 0.5 * float(lags[start] + lags[stop]) * spacing
-    fine = np.arange(middle - 40.0, middle + 40.5, 1.0)
+    fine = np.arange(middle - 40.0, middle + 40.5, 4.0)
     return _refined(gridded, spacing, fine[fine > 0.5 * SHORTEST])
 
 
@@ -84,6 +82,18 @@ def _on_grid(
     return np.interp(grid, s, east[good][first]), np.interp(grid, s, north[good][first])
 
 
+@njit(cache=True, nogil=True)
+def _count_close(
+    x: FloatArray, y: FloatArray, lags: IntArray, stride: int, close: FloatArray, total: FloatArray
+) -> None:
+    """Count for each lag the pairs of points and those that lie close; adds to `close` and `total`."""
+    for i in range(lags.size):
+        for k in range(0, x.size - lags[i], stride):
+            total[i] += 1.0
+            if (x[k + lags[i]] - x[k]) ** 2 + (y[k + lags[i]] - y[k]) ** 2 < CLOSE * CLOSE:
+                close[i] += 1.0
+
+
 def _refined(gridded: Sequence[tuple[FloatArray, FloatArray]], spacing: float, lags: FloatArray) -> float:
     median = np.empty(lags.size)
     for i, lag in enumerate(lags):
@@ -94,7 +104,7 @@ def _refined(gridded: Sequence[tuple[FloatArray, FloatArray]], spacing: float, l
             if x.size > whole + 1:
                 xa = x[whole:-1] * (1 - f) + x[whole + 1 :] * f
                 ya = y[whole:-1] * (1 - f) + y[whole + 1 :] * f
-                stride = max(1, xa.size // 300)
+                stride = max(1, xa.size // 100)
                 gaps.append(np.hypot(xa - x[: xa.size], ya - y[: ya.size])[::stride])
         median[i] = np.median(np.concatenate(gaps)) if gaps else np.inf
     return float(lags[int(np.argmin(median))])

@@ -38,8 +38,8 @@ class RunPosition:
     points : slice
         Of the ride's records.
     position : ndarray
-        Along the venue: from 0 up to the length of a lap; on an out-and-back road or a road from 0 to its length
-        whichever way it is ridden. [m]
+        Along the venue: from 0 up to the length of a lap; on an out-and-back road or a road from 0 to its
+        length, whichever way it is ridden. [m]
     unwrapped : ndarray
         The same without falling back at the start of a lap; falls when ridden against the venue's sense. [m]
     direction : ndarray
@@ -54,7 +54,8 @@ class RunPosition:
     valid : ndarray of bool
         False in a U-turn, off the venue and in an exclusion of the run.
     gates : tuple of float
-        When the run passed its gate, interpolated between records. [s]
+        When laps began and ended: as given for the run, else when it was back where it started, interpolated
+        between records. [s]
     standard_error : ndarray
         Of the position; its error varies slowly. [m]
     """
@@ -156,8 +157,9 @@ def locate(session: Session, rides: Mapping[str, Ride], watch: Watch = NO_WATCH)
     Notes
     -----
     With fixes, one line is drawn through all laps of all runs, by distance as the wheel sees it; each fix is
-    projected near where dead reckoning expects it, and the position is wheel distance plus a slowly varying offset.
-    Without fixes the lap closes by lap marks, or where the signals that the ground leaves in a ride repeat.
+    projected near where dead reckoning expects it, and the position is wheel distance plus a slowly varying
+    offset. Without fixes the lap closes by lap marks, or where the signals that the ground leaves in a ride
+    repeat.
     """
     venue = session.venue or Venue(VenueKind.ROAD)
     used = sorted({run.ride for run in session.runs if run.ride in rides and not run.excluded})
@@ -252,10 +254,7 @@ def _run_position(
     heading, curvature = _heading(run, placed, placement.line, shape)
     gates = _gates(run, lap_coordinate, lap)
     valid = ~placed.off_venue
-    interval = slice(run.points.start + 1, run.points.stop)
-    # Times of the ride are needed before the run's first record only by name: the run's own suffice.
     valid[1:] &= counted(run.time, slice(1, run.time.size), run.run.exclusions)
-    assert interval.stop - interval.start == run.time.size - 1
     return RunPosition(
         points=run.points,
         position=position,
@@ -286,17 +285,16 @@ def _heading(
 
 
 def _gates(run: TracedRun, coordinate: FloatArray, lap: float) -> tuple[float, ...]:
-    """Return when laps begin and end: as given for the run, else passing the place where position is 0."""
+    """Return when laps begin and end: as given for the run, else each time it is back where it started."""
     if run.run.laps:
         return run.run.laps
-    if not np.isfinite(lap):
-        return ()
     rising = np.maximum.accumulate(coordinate)
-    # A run cut at the gate starts up to a record's way behind it.
+    # A run cut at a gate may miss a record's way of its last lap.
     slack = min(0.01 * lap, 20.0)
-    first = int(np.ceil((rising[0] - slack) / lap))
-    last = int(np.floor((rising[-1] + slack) / lap))
-    goals = lap * np.arange(first, last + 1)
+    laps = int((rising[-1] - rising[0] + slack) // lap) if np.isfinite(lap) else 0
+    if laps == 0:
+        return ()
+    goals = rising[0] + lap * np.arange(laps + 1)
     moving = np.concatenate(([True], np.diff(rising) > 0))
     return tuple(float(t) for t in np.interp(goals, rising[moving], run.time[moving]))
 

@@ -105,11 +105,12 @@ def draw_line(
 
     Notes
     -----
-    Cubic B-splines with a penalty on the third difference (P. H. C. Eilers and B. D. Marx, Flexible smoothing with
-    B-splines and penalties, Statist. Sci. 11(2), 89-121, 1996, doi:10.1214/ss/1038425655). The penalty is set by the
-    shortest wave that fixes this dense and this noisy can show; fixes far from the line count less (Huber).
+    Cubic B-splines with a penalty on the third difference (P. H. C. Eilers and B. D. Marx, Flexible smoothing
+    with B-splines and penalties, Statist. Sci. 11(2), 89-121, 1996, doi:10.1214/ss/1038425655). The penalty
+    is set by the shortest wave that fixes this dense and this noisy can show; fixes far from the line count
+    less (Huber).
     """
-    steps = max(int(round(length / NODE)), 8)
+    steps = max(round(length / NODE), 8)
     step = length / steps
     if closed:
         station = start + (station - start) % length
@@ -132,15 +133,15 @@ def draw_line(
     coefficients = _solve(station, east, north, weight, lo, h, spans, penalty)
     for _ in range(2):
         off = np.hypot(
-            east - _spline_at(coefficients[:, 0], station, lo, h),
-            north - _spline_at(coefficients[:, 1], station, lo, h),
+            east - _spline_at(coefficients[:, 0].copy(), station, lo, h, 3),
+            north - _spline_at(coefficients[:, 1].copy(), station, lo, h, 3),
         )
         scale = max(float(np.median(off)), 0.05) if off.size else 1.0
         weight = np.minimum(1.0, 2.0 * scale / np.maximum(off, 1e-9))
         coefficients = _solve(station, east, north, weight, lo, h, spans, penalty)
     nodes = start + step * np.arange(steps if closed else steps + 1)
     values = [
-        _spline_at(_derivative(coefficients[:, axis], h, order), nodes, lo, h, degree=3 - order)
+        _spline_at(_derivative(coefficients[:, axis], h, order), nodes, lo, h, 3 - order)
         for order in range(3)
         for axis in range(2)
     ]
@@ -210,17 +211,27 @@ def _derivative(coefficients: FloatArray, h: float, order: int) -> FloatArray:
     return np.asarray(np.diff(coefficients, order) / h**order)
 
 
-def _spline_at(
-    coefficients: FloatArray, station: FloatArray, lo: float, h: float, degree: int = 3
-) -> FloatArray:
-    t = (station - lo) / h
-    i = np.clip(np.floor(t).astype(np.int64), 0, coefficients.size - degree - 1)
-    f = t - i
-    g = 1.0 - f
-    if degree == 3:
-        basis = (g**3 / 6, (4 - 6 * f**2 + 3 * f**3) / 6, (4 - 6 * g**2 + 3 * g**3) / 6, f**3 / 6)
-    elif degree == 2:
-        basis = (g**2 / 2, (1 + 2 * f * g) / 2, f**2 / 2)  # type: ignore[assignment]
-    else:
-        basis = (g, f)  # type: ignore[assignment]
-    return np.asarray(sum(b * coefficients[i + a] for a, b in enumerate(basis)))
+@njit(cache=True, nogil=True)
+def _spline_at(coefficients: FloatArray, station: FloatArray, lo: float, h: float, degree: int) -> FloatArray:
+    out = np.empty(station.size)
+    for k in range(station.size):
+        t = (station[k] - lo) / h
+        i = min(max(int(np.floor(t)), 0), coefficients.size - degree - 1)
+        f = t - i
+        g = 1.0 - f
+        if degree == 3:
+            out[k] = (
+                g * g * g * coefficients[i]
+                + (4.0 - 6.0 * f * f + 3.0 * f * f * f) * coefficients[i + 1]
+                + (4.0 - 6.0 * g * g + 3.0 * g * g * g) * coefficients[i + 2]
+                + f * f * f * coefficients[i + 3]
+            ) / 6.0
+        elif degree == 2:
+            out[k] = 0.5 * (
+                g * g * coefficients[i]
+                + (1.0 + 2.0 * f * g) * coefficients[i + 1]
+                + f * f * coefficients[i + 2]
+            )
+        else:
+            out[k] = g * coefficients[i] + f * coefficients[i + 1]
+    return out

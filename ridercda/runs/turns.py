@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import numpy.typing as npt
+from numba import njit
 
 FloatArray = npt.NDArray[np.float64]
 
@@ -29,9 +30,9 @@ def u_turns(travelled: FloatArray, east: FloatArray, north: FloatArray) -> Float
 
     Notes
     -----
-    Points at equal distances before and after a U-turn lie side by side; on a straight road they are twice that
-    distance apart. The ratio of the mean squares is 0 in a perfect turn and 1 on a straight; lanes 20 m apart
-    give about 0.03.
+    Points at equal distances before and after a U-turn lie side by side; on a straight road they are twice
+    that distance apart. The ratio of the mean squares is 0 in a perfect turn and 1 on a straight; lanes 20 m
+    apart give about 0.03.
     """
     good = np.isfinite(east) & np.isfinite(north)
     if good.sum() < 10:
@@ -42,22 +43,33 @@ def u_turns(travelled: FloatArray, east: FloatArray, north: FloatArray) -> Float
         return np.empty(0)
     grid = np.arange(s[0], s[-1], GRID)
     gx, gy = np.interp(grid, s, x), np.interp(grid, s, y)
-    gap2 = np.zeros(grid.size)
-    straight2 = np.zeros(grid.size)
-    for lag in range(int(REACH[0] / GRID), int(REACH[1] / GRID) + 1):
-        if 2 * lag >= grid.size:
-            break
-        inner = slice(lag, grid.size - lag)
-        d2 = (gx[2 * lag :] - gx[: -2 * lag]) ** 2 + (gy[2 * lag :] - gy[: -2 * lag]) ** 2
-        gap2[inner] += d2
-        straight2[inner] += (2 * lag * GRID) ** 2
-    ratio = np.where(straight2 > 3 * (2 * REACH[0]) ** 2, gap2 / np.maximum(straight2, 1.0), np.inf)
+    ratio = _likeness(gx, gy, int(REACH[0] / GRID), int(REACH[1] / GRID))
     turns = []
     for at in np.flatnonzero(ratio < LIKENESS):
         near = slice(max(at - int(REACH[1] / GRID), 0), at + int(REACH[1] / GRID) + 1)
         if ratio[at] == ratio[near].min() and (not turns or grid[at] - turns[-1] > REACH[1]):
             turns.append(grid[at])
     return np.array(turns)
+
+
+@njit(cache=True, nogil=True)
+def _likeness(x: FloatArray, y: FloatArray, near: int, far: int) -> FloatArray:
+    """Return the mean square gap across each point over that of a straight road; inf too near the ends."""
+    n = x.size
+    ratio = np.full(n, np.inf)
+    for k in range(n):
+        reach = min(far, k, n - 1 - k)
+        if reach < near + 4:
+            continue
+        gap2 = 0.0
+        straight2 = 0.0
+        for lag in range(near, reach + 1):
+            gap2 += (x[k + lag] - x[k - lag]) ** 2 + (y[k + lag] - y[k - lag]) ** 2
+            straight2 += (2 * lag * GRID) ** 2
+            if lag == near + 8 and gap2 > 4 * LIKENESS * straight2:
+                break
+        ratio[k] = gap2 / straight2
+    return ratio
 
 
 def turn_zones(
@@ -81,8 +93,8 @@ def turn_zones(
     Notes
     -----
     From 15 m before to 15 m after the middle of the turn, and further back, up to 100 m, while the rider is
-    slower than 85 % of the usual speed or coasts: before a U-turn coasting and braking look alike. Further on, up to 60 m, while
-    slower than half the usual speed. Common practice.
+    slower than 85 % of the usual speed or coasts: before a U-turn coasting and braking look alike. Further
+    on, up to 60 m, while slower than half the usual speed. Common practice.
     """
     spoilt = np.zeros(travelled.size, bool)
     if turns.size == 0 or travelled.size == 0:

@@ -60,9 +60,9 @@ def wheel_distance(ride: Ride, east: FloatArray, north: FloatArray) -> WheelDist
 
     Notes
     -----
-    The distance channel is preferred to the sum of speeds because nothing is lost in it between records; steps
-    that are missing, negative or impossibly long are filled from speed. Where the wheel stands still while the
-    position moves on (a sensor that fell silent), the position's own steps are taken.
+    The distance channel is preferred to the sum of speeds because nothing is lost in it between records;
+    steps that are missing, negative or impossibly long are filled from speed. Where the wheel stands still
+    while the position moves on (a sensor that fell silent), the position's own steps are taken.
     """
     n = ride.time.size
     dt = np.diff(ride.time, prepend=ride.time[:1])
