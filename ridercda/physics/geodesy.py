@@ -179,8 +179,8 @@ def _near_antipodal(beta1: float, beta2: float, difference: float) -> tuple[floa
         start, end = -start, -end
     wanted = abs(difference)
     # A start exactly on the equator would leave the node undefined.
-    sin1, cos1 = np.float64(min(np.sin(start), -1e-100)), np.float64(np.cos(start))
-    sin2, cos2 = np.float64(np.sin(end)), np.float64(np.cos(end))
+    sin1, cos1 = np.asarray(min(np.sin(start), -1e-100)), np.asarray(np.cos(start))
+    sin2, cos2 = np.asarray(np.sin(end)), np.asarray(np.cos(end))
 
     def reach(alpha1: float) -> tuple[_Arc, float, float]:
         sin_alpha0 = np.sin(alpha1) * cos1
