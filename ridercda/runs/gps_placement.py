@@ -23,6 +23,7 @@ ROUNDS = 3  # of drawing the line and placing the runs on it
 STRAY = 35.0  # [m] mean distance from the line beyond which a run was ridden elsewhere
 GIVEN_LENGTH_ERROR = 1e-3  # relative standard error of a lap length as people measure it; common practice
 DRAWN_LENGTH_ERROR = 1e-3  # the same of a line drawn through fixes, besides their noise; common practice
+END_OF_ROAD = 40.0  # [m] over which the lanes of a U-turn part
 TURN_DOUBT = 2.0  # [m] how differently two U-turns at one end are ridden
 
 
@@ -79,7 +80,7 @@ def place_loop_by_fixes(
     line, lying, scales = _settle(line, lying, watch)
     zero = _gate_station(lying[0], scales)
     stretch, error, basis = _true_scale(
-        line.length, line.arc_length, lap_length, _fix_error(lying, line), notes
+        line.length, line.arc_length(0.0, line.length), lap_length, _fix_error(lying, line), notes
     )
     return _told(line, lying, scales, (zero, stretch, error, basis), lap=True, notes=notes)
 
@@ -104,7 +105,7 @@ def place_road_by_fixes(
     """
     notes: list[str] = []
     guide = max(runs, key=lambda run: (run.length, run.run.id))
-    path = _signed_path(guide)
+    path = _signed_path(guide, guide.travelled)
     good = np.isfinite(guide.east)
     low, high = float(path[good].min()), float(path[good].max())
     if high - low < 50.0:
@@ -115,7 +116,10 @@ def place_road_by_fixes(
     lying = _find(runs, line, notes)
     line, lying, scales = _settle(line, lying, watch)
     near, far = _ends(lying, scales, line)
-    drawn = line.arc_length / line.length * (far - near)
+    # At a U-turn the two lanes part and the line drawn between them is shorter than the way ridden.
+    inset = min(END_OF_ROAD, 0.25 * (far - near))
+    inner = (near + inset, far - inset)
+    drawn = line.arc_length(*inner) / (inner[1] - inner[0]) * (far - near)
     turned_at_both = near > -np.inf and _turns_at_both_ends(lying, scales, near, far)
     known = lap_length / 2 if lap_length is not None and turned_at_both else None
     stretch, error, basis = _true_scale(far - near, drawn, known, _fix_error(lying, line), notes)
@@ -123,13 +127,11 @@ def place_road_by_fixes(
     return replace(placement, length=(far - near) * stretch, length_error=error * (far - near) * stretch)
 
 
-def _signed_path(run: TracedRun) -> FloatArray:
-    """Return the distance ridden with its sign reversed at each U-turn, 0 at the first record."""
-    if run.turns.size == 0:
-        return np.asarray(run.travelled - run.travelled[0])
+def _signed_path(run: TracedRun, travelled: FloatArray) -> FloatArray:
+    """Return distance ridden with its sign reversed at each U-turn, 0 at the first record."""
     knots = np.concatenate((run.travelled[:1], run.turns, run.travelled[-1:]))
     legs = np.diff(knots) * (-1.0) ** np.arange(knots.size - 1)
-    return np.interp(run.travelled, knots, np.concatenate(([0.0], np.cumsum(legs))))
+    return np.interp(travelled, knots, np.concatenate(([0.0], np.cumsum(legs))))
 
 
 def _leg_sign(run: TracedRun) -> FloatArray:
@@ -140,7 +142,7 @@ def _leg_sign(run: TracedRun) -> FloatArray:
 def _find(runs: Sequence[TracedRun], line: ReferenceLine, notes: list[str]) -> list[_Lying]:
     lying = []
     for run in runs:
-        path = _signed_path(run)
+        path = _signed_path(run, run.travelled)
         offset, direction, miss = locate_run(line, path, run.east, run.north, (1.0, -1.0))
         if miss > STRAY:
             notes.append(f"Run {run.run.id} was ridden elsewhere: its fixes miss the venue's line.")
@@ -288,12 +290,11 @@ def _turn_stations(
     """Return the stations of all U-turns at the near end and at the far end."""
     near, far = [], []
     for run in lying:
-        station = scales[run.traced.group][0] * run.path + run.offset
-        sign = np.sign(run.path[-1] - run.path[0]) if run.traced.turns.size == 0 else 0.0
-        if sign:
-            continue
-        at = np.interp(run.traced.turns, run.traced.travelled, station)
-        outward = _first_sign(run) * (-1.0) ** np.arange(at.size)
+        traced = run.traced
+        sign = _first_sign(run)
+        path = sign * _signed_path(traced, traced.turns)  # not from the records: they cut the turn short
+        at = scales[traced.group][0] * path + np.interp(traced.turns, traced.travelled, run.offset)
+        outward = sign * (-1.0) ** np.arange(at.size)
         far.append(at[outward > 0])
         near.append(at[outward < 0])
     empty = [np.empty(0)]
@@ -302,7 +303,7 @@ def _turn_stations(
 
 def _first_sign(run: _Lying) -> float:
     """Return the direction in which a run first goes along the line."""
-    forward = _signed_path(run.traced)
+    forward = _signed_path(run.traced, run.traced.travelled)
     moved = int(np.argmax(np.abs(forward) > 0.5 * float(np.abs(forward).max())))
     return float(np.sign(run.path[moved] * forward[moved])) or 1.0
 

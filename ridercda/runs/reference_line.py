@@ -46,13 +46,17 @@ class ReferenceLine:
         """Range of the station. [m]"""
         return self.step * (self.east.size if self.closed else self.east.size - 1)
 
-    @property
-    def arc_length(self) -> float:
-        """Length of the drawn line. [m]"""
+    def arc_length(self, low: float, high: float) -> float:
+        """Return the length of the drawn line between two stations, or all round a closed one. [m]"""
         pace = np.hypot(self.d_east, self.d_north)
         if self.closed:
             return float(pace.mean() * self.length)
-        return float((pace.sum() - 0.5 * (pace[0] + pace[-1])) * self.step)
+        station = self.start + self.step * np.arange(pace.size)
+        within = np.linspace(low, high, max(int((high - low) / self.step), 2))
+        pace = np.interp(within, station, pace)
+        return float((pace.mean() - 0.5 * (pace[0] + pace[-1]) / pace.size) * pace.size / (pace.size - 1)) * (
+            high - low
+        )
 
     def heading(self, station: FloatArray) -> FloatArray:
         """Return the direction of growing station, clockwise from north, 0 to 2π. [rad]"""

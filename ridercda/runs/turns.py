@@ -9,8 +9,8 @@ from numba import njit
 FloatArray = npt.NDArray[np.float64]
 
 GRID = 4.0  # [m] spacing of the path on which turns are sought
-REACH = (12.0, 100.0)  # [m] nearest and farthest pair of points compared across a turn
-LIKENESS = 0.03  # mean square gap between the two ways over that of a straight road
+REACH = (12.0, 120.0)  # [m] nearest and farthest pair of points compared across a turn
+LIKENESS = 0.05  # mean square gap between the two ways over that of a straight road
 
 
 def u_turns(travelled: FloatArray, east: FloatArray, north: FloatArray) -> FloatArray:
@@ -32,7 +32,7 @@ def u_turns(travelled: FloatArray, east: FloatArray, north: FloatArray) -> Float
     -----
     Points at equal distances before and after a U-turn lie side by side; on a straight road they are twice
     that distance apart. The ratio of the mean squares is 0 in a perfect turn and 1 on a straight; lanes 20 m
-    apart give about 0.03.
+    apart give about 0.02.
     """
     good = np.isfinite(east) & np.isfinite(north)
     if good.sum() < 10:
@@ -48,8 +48,16 @@ def u_turns(travelled: FloatArray, east: FloatArray, north: FloatArray) -> Float
     for at in np.flatnonzero(ratio < LIKENESS):
         near = slice(max(at - int(REACH[1] / GRID), 0), at + int(REACH[1] / GRID) + 1)
         if ratio[at] == ratio[near].min() and (not turns or grid[at] - turns[-1] > REACH[1]):
-            turns.append(grid[at])
+            turns.append(grid[at] + GRID * _vertex(*ratio[at - 1 : at + 2]))
     return np.array(turns)
+
+
+def _vertex(before: float, at: float, after: float) -> float:
+    """Return where the parabola through three equally spaced values is least, -0.5 to 0.5 spacings."""
+    bend = before - 2 * at + after
+    if not np.isfinite(bend) or bend <= 0:
+        return 0.0
+    return float(np.clip(0.5 * (before - after) / bend, -0.5, 0.5))
 
 
 @njit(cache=True, nogil=True)
@@ -66,7 +74,7 @@ def _likeness(x: FloatArray, y: FloatArray, near: int, far: int) -> FloatArray:
         for lag in range(near, reach + 1):
             gap2 += (x[k + lag] - x[k - lag]) ** 2 + (y[k + lag] - y[k - lag]) ** 2
             straight2 += (2 * lag * GRID) ** 2
-            if lag == near + 8 and gap2 > 4 * LIKENESS * straight2:
+            if lag == near + 8 and gap2 > 0.5 * straight2:
                 break
         ratio[k] = gap2 / straight2
     return ratio
