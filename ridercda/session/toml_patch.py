@@ -1,7 +1,8 @@
 """Bring a TOML text from one content to another, touching only what differs.
 
-Items of an array of tables are matched by their ``id``; without one, by being equal, then by order. A removed
-table goes with its own comment, a new one is set after its neighbour in the array, or where `order` puts it.
+Items of an array of tables are matched by their ``id``, then by being equal, then by being equal but for
+the id; those without one by order. A removed table goes with its own comment, a new one is set after its
+neighbour in the array, or where `order` puts it.
 """
 
 from __future__ import annotations
@@ -15,6 +16,10 @@ from ridercda.session.toml_text import Block, Path, Statement, TomlText, cut
 
 TomlValue = str | int | float | bool | dt.date | dt.time | list["TomlValue"] | dict[str, "TomlValue"]
 TomlTable = dict[str, TomlValue]
+
+
+class InlineTable(dict[str, TomlValue]):
+    """A table that is written on one line, within its key's statement."""
 
 
 def patch(text: str, old: TomlTable, new: TomlTable, order: Sequence[str] = ()) -> str:
@@ -46,10 +51,10 @@ def patch(text: str, old: TomlTable, new: TomlTable, order: Sequence[str] = ()) 
 
 def same(a: TomlValue, b: TomlValue) -> bool:
     """Whether two TOML values are the same in type and content."""
-    if type(a) is not type(b):
-        return False
     if isinstance(a, dict) and isinstance(b, dict):
         return a.keys() == b.keys() and all(same(a[key], b[key]) for key in a)
+    if type(a) is not type(b):
+        return False
     if isinstance(a, list) and isinstance(b, list):
         return len(a) == len(b) and all(map(same, a, b))
     return a == b
@@ -59,7 +64,7 @@ def matches(old: Sequence[TomlTable], new: Sequence[TomlTable]) -> list[int | No
     """Return for each new item the index of the old one it continues, or None."""
     found: list[int | None] = [None] * len(new)
     free = dict(enumerate(old))
-    for rule in (_same_id, same, _both_nameless):
+    for rule in (_same_id, same, _same_but_id, _both_nameless):
         for i, item in enumerate(new):
             if found[i] is None:
                 j = next((j for j, was in free.items() if rule(was, item)), None)
@@ -73,8 +78,19 @@ def _same_id(a: TomlTable, b: TomlTable) -> bool:
     return "id" in a and "id" in b and a["id"] == b["id"]
 
 
+def _same_but_id(a: TomlTable, b: TomlTable) -> bool:
+    return "id" in a and "id" in b and same({**a, "id": ""}, {**b, "id": ""})
+
+
 def _both_nameless(a: TomlTable, b: TomlTable) -> bool:
     return "id" not in a and "id" not in b
+
+
+def _has_header(value: TomlValue) -> bool:
+    """Whether a new value is written as a table, or several, with headers of their own."""
+    if isinstance(value, dict):
+        return not isinstance(value, InlineTable)
+    return _tables(value) is not None
 
 
 def _tables(value: TomlValue) -> list[TomlTable] | None:
@@ -217,7 +233,7 @@ class _Patcher:
         """Add a key that a table does not have yet."""
         dotted = self.dotted(path)
         tables = _tables(value)
-        if dotted is None and isinstance(value, dict):
+        if dotted is None and isinstance(value, dict) and _has_header(value):
             self.insert_tables((*path, key), value, self.place((*path, key)))
         elif dotted is None and tables is not None:
             after: Path | None = None
@@ -253,25 +269,31 @@ class _Patcher:
         """Insert a new table and the tables below it as blocks."""
         block = self.insert(path, index)
         for key, value in table.items():
-            if not isinstance(value, dict) and _tables(value) is None:
+            if not _has_header(value):
                 self.append(block, (key,), value)
         for key, value in table.items():
-            if isinstance(value, dict) or _tables(value) is not None:
+            if _has_header(value):
                 self.add(path, key, value)
 
     def insert(self, path: Path, index: int) -> Block:
         blocks = self.document.blocks
         self.end_line(index)
-        names = ".".join(_key_text(part) for part in path if isinstance(part, str))
+        names = ".".join(map(_key_text, _names(path)))
         header = f"[[{names}]]" if isinstance(path[-1], int) else f"[{names}]"
-        apart = len(blocks) <= 2 or any(block.gap for block in blocks[2:])
         first = not any(block.text for block in blocks[:index])
-        gap = self.document.newline if apart and not first else ""
+        gap = self.document.newline if not first and self.set_apart(path) else ""
         block = Block(path, gap=gap, header=header + self.document.newline)
         if first and index < len(blocks) and not blocks[index].gap:
             blocks[index].gap = self.document.newline
         blocks.insert(index, block)
         return block
+
+    def set_apart(self, path: Path) -> bool:
+        """Whether a new table is set apart by a blank line, going by its like or by most tables."""
+        names = _names(path)
+        others = self.document.blocks[2:]
+        like = [block for block in others if _names(block.path) == names] or others
+        return 2 * sum(bool(block.gap) for block in like) >= len(like)
 
     def append(self, block: Block, key: tuple[str, ...], value: TomlValue) -> None:
         """Add a statement after the last one of a block."""
@@ -305,6 +327,10 @@ class _Patcher:
             last.after += self.document.newline
         else:
             block.body[-1] = last + self.document.newline
+
+
+def _names(path: Path) -> tuple[str, ...]:
+    return tuple(part for part in path if isinstance(part, str))
 
 
 def _joined_gap(first: str, second: str) -> str:

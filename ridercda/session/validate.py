@@ -127,6 +127,8 @@ def _within(key: str, value: float | tuple[float, ...], bound: Bound) -> Iterato
 def _day(session: Session) -> Iterator[tuple[str, str]]:
     if not session.name:
         yield "name", "has no text; name the session"
+    if session.utc_offset is not None and session.utc_offset % 60:
+        yield "timezone", f'{session.utc_offset:g} s is not a whole number of minutes; write e.g. "+02:00"'
     worthwhile = session.smallest_worthwhile
     if worthwhile.cda is not None and worthwhile.power is not None:
         yield "smallest_worthwhile", "is given both as a drag area and as a power; keep one"
