@@ -154,6 +154,7 @@ def ride(
     here = np.empty(7)
     there = np.empty(7)
     follow = 1.0 - math.exp(-dt / response)
+    leave = math.exp(-dt / 0.15)
     phase = SETTLE
     run = 0
     direction = 1.0
@@ -164,7 +165,7 @@ def ride(
     gone = 0.0
     speed = 3.0
     pedal = 0.5 * easy_power
-    integral = 0.0
+    trim = 0.0
     since = 0.0
     mass = runs[0, MASS]
     tyres = int(runs[0, TYRES])
@@ -182,8 +183,10 @@ def ride(
             if holds_speed:
                 slip = target - speed
                 if abs(slip) < 1.5:
-                    integral = min(max(integral + 4.0 * slip * dt, 0.0), 600.0)
-                command = min(max(integral + 30.0 * slip, 0.0), 700.0) * wobble[i]
+                    trim += 8.0 * slip * dt
+                # The rider knows roughly what the speed takes, and trims that by the head unit.
+                flat = (0.6 * cda * target * target + 1.1 * runs[run, MASS] * GRAVITY * 0.004) * target
+                command = min(max(flat + trim + 120.0 * slip, 0.0), 700.0) * wobble[i]
             else:
                 command = target * wobble[i] * (1.0 + grade_response * here[GRADE] * direction)
         stop = 0.0
@@ -195,9 +198,10 @@ def ride(
             stop = 1.5
         if (here[LIMIT] < 90.0 and direction > 0 and speed > 0.98 * here[LIMIT]) or stop > 0.0:
             command = 0.0
-        pedal += follow * (command - pedal)
-        if pedal < 1.0 and command == 0.0:
-            pedal = 0.0
+        if command > 0.0:
+            pedal += follow * (command - pedal)
+        else:  # feet stop at once
+            pedal = 0.0 if pedal < 1.0 else pedal * leave
 
         power[i] = pedal
         braked[i] = 0.0
@@ -324,7 +328,7 @@ def ride(
             mass = runs[run, MASS]
             tyres = int(runs[run, TYRES])
             cda = runs[run, CDA]
-            integral = pedal
+            trim = 0.0
             energy = _energy(speed, here, mass, spin, mass_height)
             fresh = 1
     return -1

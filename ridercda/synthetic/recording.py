@@ -211,7 +211,7 @@ def _speed(
         speed = np.diff(ends, prepend=0.0) / interval * factor
     moving = speed > 0.3
     noise = rng.normal(0, spec.noise, count) if spec.noise > 0 else np.zeros(count)
-    speed = _rounded(np.where(moving, np.maximum(speed + noise, 0.0), 0.0), spec.resolution)
+    speed = _rounded(np.where(moving, np.maximum(speed + noise, 0.0), speed), spec.resolution)
     if interval > 1.0 or spec.noise == 0:
         return speed, (ends - ends[0]) * factor
     return speed, np.concatenate(([0.0], np.cumsum(speed[1:]) * interval))

@@ -8,6 +8,7 @@ from enum import StrEnum
 from ridercda.synthetic.faults import FaultSpec
 from ridercda.synthetic.rider import RiderSpec
 from ridercda.synthetic.sensors import (
+    BarometerSpec,
     PositionSpec,
     PowerAveraging,
     PowerSpec,
@@ -174,7 +175,11 @@ def noise_free(spec: DaySpec) -> DaySpec:
         venue=venue,
         wind=replace(STILL, report=None),
         rider=replace(spec.rider, run_spread=0.0, within_run=0.0, drift_per_hour=0.0),
-        sensors=exact_sensors(spec.sensors.interval),
+        sensors=replace(
+            exact_sensors(spec.sensors.interval),
+            position=PositionSpec(wander=0.0, jitter=0.0) if spec.sensors.position else None,
+            barometer=BarometerSpec(0.0, 0.0, 0.0, 0.0) if spec.sensors.barometer else None,
+        ),
         faults=(),
     )
 
