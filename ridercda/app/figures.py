@@ -7,20 +7,12 @@ import math
 
 from ridercda.app.quantities import plain
 from ridercda.drag.estimate import Figure
+from ridercda.units import digits_for, format_duration
 
 
 def decimals_for(half_width: float) -> int:
-    """Return how many decimals a value deserves whose interval reaches `half_width` to either side.
-
-    One significant digit of the half-width, two where it begins with a 1, so that rounding never takes away more
-    than a sixth of it. A width of zero, or none at all, gives none.
-    """
-    if not math.isfinite(half_width) or half_width <= 0:
-        return 0
-    exponent = math.floor(math.log10(half_width))
-    if half_width / 10**exponent < 1.95:
-        exponent -= 1
-    return max(0, -exponent)
+    """Return how many decimals a value deserves whose interval reaches `half_width` to either side; 0 without."""
+    return digits_for(half_width) if math.isfinite(half_width) and half_width > 0 else 0
 
 
 def half_width(interval: tuple[float, float]) -> float:
@@ -56,9 +48,7 @@ def clock(seconds: float, *, with_seconds: bool = False) -> str:
 
 def elapsed(seconds: float) -> str:
     """Return a time on a ride's clock, ``5:10`` or ``1:05:10``."""
-    whole = round(seconds)
-    hours, rest = divmod(whole, 3600)
-    return f"{hours}:{rest // 60:02d}:{rest % 60:02d}" if hours else f"{rest // 60}:{rest % 60:02d}"
+    return format_duration(seconds)
 
 
 def duration(seconds: float) -> str:

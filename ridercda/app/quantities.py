@@ -1,130 +1,90 @@
-"""Units as the user has chosen them, for showing: metric or imperial, per quantity (no Qt but the signal)."""
+"""Units as the user has chosen them, for showing: metric or imperial, per quantity."""
 
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import replace
 from types import MappingProxyType
 
 from PySide6.QtCore import QObject, Signal
 
-
-@dataclass(frozen=True, slots=True)
-class DisplayUnit:
-    """A unit to show: shown = SI * scale + offset."""
-
-    symbol: str
-    scale: float = 1.0
-    offset: float = 0.0
-    decimals: int = 1
-    typed: str = ""  # as `ridercda.units` reads it, where that is not the symbol
-
-    def shown(self, value: float) -> float:
-        """Return an SI value in this unit."""
-        return value * self.scale + self.offset
-
-    def si(self, shown: float) -> float:
-        """Return a value in this unit in SI."""
-        return (shown - self.offset) / self.scale
-
-
-METRIC, IMPERIAL = "metric", "imperial"
-_DEG = 180 / math.pi
-
-# What can be chosen for each quantity: the metric default first, then the imperial default, then others.
-DISPLAY: Mapping[str, tuple[DisplayUnit, ...]] = MappingProxyType(
-    {
-        "speed": (
-            DisplayUnit("km/h", 3.6),
-            DisplayUnit("mph", 1 / 0.44704, typed="mi/h"),
-            DisplayUnit("m/s", decimals=2),
-        ),
-        "wind": (DisplayUnit("m/s"), DisplayUnit("mph", 1 / 0.44704, typed="mi/h"), DisplayUnit("km/h", 3.6)),
-        "distance": (DisplayUnit("km", 1e-3, decimals=2), DisplayUnit("mi", 1 / 1609.344, decimals=2)),
-        "length": (DisplayUnit("m", decimals=0), DisplayUnit("ft", 1 / 0.3048, decimals=0)),
-        "short_length": (DisplayUnit("m", decimals=3), DisplayUnit("in", 1 / 0.0254, decimals=2)),
-        "mass": (DisplayUnit("kg"), DisplayUnit("lb", 1 / 0.45359237)),
-        "temperature": (
-            DisplayUnit("°C", offset=-273.15, typed="degC"),
-            DisplayUnit("°F", 1.8, -459.67, typed="degF"),
-        ),
-        "pressure": (
-            DisplayUnit("hPa", 0.01),
-            DisplayUnit("inHg", 1 / 3386.389, decimals=2),
-            DisplayUnit("mbar", 0.01),
-        ),
-        "tyre_pressure": (
-            DisplayUnit("bar", 1e-5, decimals=2),
-            DisplayUnit("psi", 1 / 6894.757293168),
-        ),
-        "power": (DisplayUnit("W", decimals=0),),
-        "energy": (DisplayUnit("kJ", 1e-3, decimals=1),),
-        "angle": (DisplayUnit("°", _DEG, decimals=0, typed="deg"),),
-        "area": (DisplayUnit("m²", decimals=4, typed="m^2"),),
-        "density": (DisplayUnit("kg/m³", decimals=3, typed="kg/m^3"),),
-        "inertia": (DisplayUnit("kg m²", decimals=3, typed="kg*m^2"),),
-        "fraction": (DisplayUnit("%", 100.0, decimals=1),),
-        "ratio": (DisplayUnit("", decimals=4),),
-        "time": (DisplayUnit("s", decimals=0),),
-        "altitude": (DisplayUnit("m", decimals=0), DisplayUnit("ft", 1 / 0.3048, decimals=0)),
-    }
+from ridercda.units import (
+    DisplayUnits,
+    Kind,
+    UnitSystem,
+    display_symbol,
+    format_number,
+    format_quantity,
+    kind_units,
+    to_display,
 )
+
+CHOOSABLE = tuple(
+    kind for kind in Kind if kind_units(kind).metric[0] != kind_units(kind).imperial[0]
+)
+"""The quantities for which the two systems differ."""
 
 
 class UnitChoice(QObject):
-    """Which unit each quantity is shown in."""
+    """Which system each quantity is shown in."""
 
     changed = Signal()
 
     def __init__(self, parent: QObject | None = None) -> None:
         super().__init__(parent)
-        self._chosen: dict[str, int] = {}
+        self._units = DisplayUnits()
 
-    def unit(self, quantity: str) -> DisplayUnit:
-        """Return the unit a quantity is shown in."""
-        return DISPLAY[quantity][self._chosen.get(quantity, 0)]
+    @property
+    def units(self) -> DisplayUnits:
+        """The choice."""
+        return self._units
 
-    def choose(self, quantity: str, symbol: str) -> None:
-        """Show one quantity in another unit."""
-        symbols = [unit.symbol for unit in DISPLAY[quantity]]
-        if symbol in symbols and symbols.index(symbol) != self._chosen.get(quantity, 0):
-            self._chosen[quantity] = symbols.index(symbol)
+    def choose(self, units: DisplayUnits) -> None:
+        """Take another choice."""
+        if units != self._units:
+            self._units = units
             self.changed.emit()
 
-    def choose_system(self, system: str) -> None:
-        """Show every quantity in metric or in imperial units."""
-        column = 1 if system == IMPERIAL else 0
-        chosen = {quantity: min(column, len(units) - 1) for quantity, units in DISPLAY.items()}
-        if chosen != self._chosen:
-            self._chosen = chosen
-            self.changed.emit()
+    def choose_system(self, system: UnitSystem) -> None:
+        """Show every quantity in one system."""
+        self.choose(DisplayUnits(system))
 
-    def chosen(self) -> dict[str, str]:
-        """Return the symbol chosen for each quantity, for the settings."""
-        return {quantity: self.unit(quantity).symbol for quantity in DISPLAY}
+    def choose_for(self, kind: Kind, system: UnitSystem) -> None:
+        """Show one quantity in another system than the rest."""
+        others = {each: choice for each, choice in self._units.by_kind.items() if each is not kind}
+        if system is not self._units.system:
+            others[kind] = system
+        self.choose(replace(self._units, by_kind=MappingProxyType(others)))
 
-    def number(self, value: float | None, quantity: str, decimals: int | None = None) -> str:
-        """Return an SI value as a number in the chosen unit, without the unit; a dash where there is none."""
+    def symbol(self, kind: Kind) -> str:
+        """Return the unit a quantity is shown in; empty for a plain number."""
+        symbol = display_symbol(kind, self._units.of(kind))
+        return "" if symbol == "1" else symbol
+
+    def scale(self, kind: Kind) -> float:
+        """Return how many shown units one SI unit is (for differences: without the offset of temperature)."""
+        low, high = to_display([0.0, 1.0], kind, self._units.of(kind))
+        return float(high - low)
+
+    def shown(self, value: float, kind: Kind) -> float:
+        """Return an SI value in the unit shown."""
+        return float(to_display(value, kind, self._units.of(kind)))
+
+    def text(self, value: float | None, kind: Kind, digits: int | None = None) -> str:
+        """Return an SI value with its unit; a dash where there is none."""
+        return format_quantity(value, kind, self._units.of(kind), digits=digits).replace(" ", "\u00a0")
+
+    def number(self, value: float | None, kind: Kind, digits: int | None = None) -> str:
+        """Return an SI value as a number without its unit; a dash where there is none."""
         if value is None or not math.isfinite(value):
             return "–"
-        unit = self.unit(quantity)
-        return plain(unit.shown(value), unit.decimals if decimals is None else decimals)
-
-    def text(self, value: float | None, quantity: str, decimals: int | None = None) -> str:
-        """Return an SI value with its unit, a no-break space between; a dash where there is none."""
-        number = self.number(value, quantity, decimals)
-        symbol = self.unit(quantity).symbol
-        if number == "–" or not symbol:
-            return number
-        return f"{number}{symbol}" if symbol == "°" else f"{number}\u00a0{symbol}"
+        units = kind_units(kind)
+        usual = (units.imperial if self._units.of(kind) is UnitSystem.IMPERIAL else units.metric)[1]
+        return format_number(self.shown(value, kind), usual if digits is None else digits)
 
 
 def plain(value: float, decimals: int, *, signed: bool = False) -> str:
-    """Return a number with a true minus sign, thousands set off by a thin space, and no negative zero."""
-    if not math.isfinite(value):
-        return "–"
-    text = f"{abs(value):,.{decimals}f}".replace(",", "\u2009")
-    is_zero = not any(c in "123456789" for c in text)
-    sign = "" if is_zero else "\u2212" if value < 0 else "+" if signed else ""
-    return sign + text
+    """Return a number with a true minus sign and thousands set off by a thin space."""
+    sign = format_number(value, decimals, plus="+" if signed else "")[:1]
+    sign = sign if sign in "+−" else ""
+    return sign + f"{abs(value):,.{decimals}f}".replace(",", "\u2009") if math.isfinite(value) else "–"

@@ -3,12 +3,15 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from pathlib import Path
+from types import MappingProxyType
 
 from PySide6.QtCore import QByteArray, QObject, QSettings
 
-from ridercda.app.quantities import UnitChoice
+from ridercda.app.quantities import CHOOSABLE, UnitChoice
 from ridercda.app.theme import Mode, Theme
+from ridercda.units import DisplayUnits, UnitSystem
 
 ORGANISATION = "RiderCdA"
 APPLICATION = "RiderCdA"
@@ -79,11 +82,15 @@ class Settings(QObject):
 
     def restore_units(self, units: UnitChoice) -> None:
         """Set the units as remembered."""
-        for quantity in units.chosen():
-            if symbol := self.text(f"units/{quantity}"):
-                units.choose(quantity, symbol)
+        system = self.text("units/system")
+        chosen = DisplayUnits(UnitSystem(system) if system in tuple(UnitSystem) else UnitSystem.METRIC)
+        kept = {kind: self.text(f"units/{kind.name}") for kind in CHOOSABLE}
+        by_kind = {kind: UnitSystem(word) for kind, word in kept.items() if word in tuple(UnitSystem)}
+        units.choose(replace(chosen, by_kind=MappingProxyType(by_kind)))
 
     def keep_units(self, units: UnitChoice) -> None:
         """Remember the units."""
-        for quantity, symbol in units.chosen().items():
-            self.set_text(f"units/{quantity}", symbol)
+        self.set_text("units/system", units.units.system.value)
+        for kind in CHOOSABLE:
+            choice = units.units.by_kind.get(kind)
+            self.set_text(f"units/{kind.name}", choice.value if choice else "")

@@ -1,0 +1,1 @@
+"""The day strip: the whole day on one time axis."""
