@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from types import MappingProxyType
 
 import numpy as np
@@ -18,6 +18,7 @@ from ridercda.runs.placement import Placed, Placement, Scale
 from ridercda.runs.records import counted
 from ridercda.runs.reference_line import ReferenceLine
 from ridercda.runs.traced import Group, RideTrace, TracedRun, trace_ride, trace_runs
+from ridercda.runs.turns import turns_by_speed
 from ridercda.session.document import Session, Venue, VenueKind
 from ridercda.watch import NO_WATCH, Watch
 
@@ -165,9 +166,19 @@ def locate(session: Session, rides: Mapping[str, Ride], watch: Watch = NO_WATCH)
     used = sorted({run.ride for run in session.runs if run.ride in rides and not run.excluded})
     plane = plane_of([rides[ride] for ride in used])
     traces = {ride: trace_ride(rides[ride], plane) for ride in used}
+    if venue.kind is VenueKind.OUT_AND_BACK:
+        leg = venue.lap_length / 2 if venue.lap_length is not None else None
+        traces = {ride: _turned_by_speed(trace, leg) for ride, trace in traces.items()}
     runs = trace_runs(session, traces)
     placement = _placed(session, venue, runs, _spans(runs, traces), watch)
     return _path(venue, runs, placement)
+
+
+def _turned_by_speed(trace: RideTrace, leg: float | None) -> RideTrace:
+    """Return a trace without positions with the U-turns that its speed shows."""
+    if np.isfinite(trace.east).any():
+        return trace
+    return replace(trace, turns=turns_by_speed(trace.travelled, trace.speed, leg))
 
 
 def _spans(runs: Sequence[TracedRun], traces: Mapping[str, RideTrace]) -> list[RideTrace]:
@@ -197,8 +208,9 @@ def _placed(
     rest = [run for run in runs if run.run.id not in at_hand and (placement is None or not run.fixed)]
     if not rest and placement is not None:
         return placement
+    located = [run for run in runs if run.run.id in at_hand]
     mass = (session.rider.mass or 75.0) + (session.bike.mass or 9.0)
-    closed = place_by_closure(venue, runs, rest, placement, mass)
+    closed = place_by_closure(venue, rest, placement, located, mass)
     return Placement(
         line=closed.line,
         length=closed.length,

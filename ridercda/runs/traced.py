@@ -72,6 +72,7 @@ class TracedRun:
     altitude: FloatArray  # [m]
     source: DistanceSource
     turns: FloatArray  # inside the run, in distance ridden [m]
+    earlier_turns: FloatArray  # in the ride before the run [m]
     marks: tuple[float, ...]  # laps given for the run, else pressed by hand inside it [s]
 
     @property
@@ -145,6 +146,7 @@ def trace_run(run: Run, tyres: str, trace: RideTrace, turns: FloatArray) -> Trac
         altitude=trace.altitude[points],
         source=trace.source,
         turns=turns[inside],
+        earlier_turns=turns[turns <= travelled[0]] if time.size else turns[:0],
         marks=marks,
     )
 

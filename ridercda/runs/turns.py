@@ -80,6 +80,46 @@ def _likeness(x: FloatArray, y: FloatArray, near: int, far: int) -> FloatArray:
     return ratio
 
 
+def turns_by_speed(travelled: FloatArray, speed: FloatArray, leg: float | None) -> FloatArray:
+    """Return the distances ridden at which a rider slowed down to turn, for a ride without positions.
+
+    Parameters
+    ----------
+    travelled, speed : ndarray, shape (n,)
+        [m, m/s]
+    leg : float, optional
+        The road one way, if known. [m]
+
+    Returns
+    -------
+    ndarray, shape (k,)
+        Slowest point of each slow spell, increasing. [m]
+
+    Notes
+    -----
+    A turn is slower than 60 % of the usual speed. Of two spells nearer to each other than 60 % of a leg the
+    slower one counts. A U-turn and a stop look alike here.
+    """
+    moving = speed[speed > 1.0]
+    if moving.size == 0:
+        return np.empty(0)
+    slow = speed < 0.6 * float(np.median(moving))
+    edges = np.flatnonzero(np.diff(np.concatenate(([False], slow, [False])).astype(np.int8)))
+    apart = 0.6 * leg if leg is not None else 150.0
+    found: list[tuple[float, float]] = []
+    for first, last in zip(edges[::2], edges[1::2], strict=True):
+        if first == 0 or last == speed.size:
+            continue  # setting off and rolling out are no turns
+        k = first + int(np.argmin(speed[first:last]))
+        here = (float(travelled[k]), float(speed[k]))
+        if found and here[0] - found[-1][0] < apart:
+            if here[1] < found[-1][1]:
+                found[-1] = here
+        else:
+            found.append(here)
+    return np.array([at for at, _ in found])
+
+
 def turn_zones(
     turns: FloatArray, travelled: FloatArray, speed: FloatArray, power: FloatArray | None
 ) -> npt.NDArray[np.bool_]:
