@@ -1,0 +1,20 @@
+"""The jobs that run in the other processes; heavy layers are imported there, never by the window."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from ridercda.drag.estimate import Estimate
+from ridercda.rides.ride import Ride
+from ridercda.session.document import RideEntry, Session
+from ridercda.watch import Watch
+
+
+def read_ride(watch: Watch, path: Path, entry: RideEntry, utc_offset: float | None) -> Ride:
+    """Return a ride of the session, read and repaired as the session says."""
+    raise NotImplementedError
+
+
+def solve(watch: Watch, session: Session, folder: Path | None, fresh: dict[str, Ride], rides: tuple[str, ...]) -> Estimate:
+    """Return the estimate of a session."""
+    raise NotImplementedError
