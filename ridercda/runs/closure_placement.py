@@ -220,7 +220,10 @@ def _lap_by_ground(
     if score[top] - float(np.median(score)) < 4.0 or top in (0, laps.size - 1):
         return None
     refined = laps[top] + fine * (peak(score, top) - top)
-    return float(refined), 0.5 * step * length / longest
+    # Two units below the top lie two standard errors away; the grid itself is worth a fraction of a step.
+    likely = laps[score > score[top] - 2.0]
+    error = 0.25 * float(np.ptp(likely))
+    return float(refined), float(np.hypot(error, 0.25 * step * length / longest))
 
 
 def _aligned(
@@ -277,7 +280,7 @@ def _shifted(placed: Placed, by: float) -> Placed:
 def _grid_phase(run: TracedRun, pattern: Pattern, station: FloatArray, length: float) -> FloatArray:
     s, first = np.unique(run.travelled, return_index=True)
     middle = s[0] + pattern.step * (np.arange(pattern.signals.shape[1]) + 0.5)
-    return np.interp(middle, s, station[first]) / length
+    return np.asarray(np.interp(middle, s, station[first]) / length)
 
 
 def _gate_offset(run: TracedRun, path: FloatArray, length: float) -> float | None:
@@ -286,7 +289,7 @@ def _gate_offset(run: TracedRun, path: FloatArray, length: float) -> float | Non
         return None
     at = np.interp(np.asarray(run.marks), run.time, path)
     turn = np.exp(2j * np.pi * at / length)
-    return float(-np.angle(turn.mean()) / (2 * np.pi) * length)
+    return -float(np.angle(turn.mean())) / (2 * np.pi) * length
 
 
 def _offset(
@@ -380,9 +383,9 @@ def _between_turns(venue: Venue, rest: Sequence[TracedRun], known: Placement | N
 
 def _between(run: TracedRun, factor: float, length: float) -> Placed:
     # The first leg of a ride is called out; every U-turn since then reversed it.
-    first = (-1.0) ** run.earlier_turns.size
+    first = -1.0 if run.earlier_turns.size % 2 else 1.0
     knots = np.concatenate((run.travelled[:1], run.turns, run.travelled[-1:]))
-    signs = first * (-1.0) ** np.arange(knots.size - 1)
+    signs = first * np.where(np.arange(knots.size - 1) % 2, -1.0, 1.0)
     path = factor * np.concatenate(([0.0], np.cumsum(np.diff(knots) * signs)))
     if run.turns.size:
         ends = np.where(signs[:-1] > 0, length, 0.0)

@@ -19,7 +19,6 @@ GRAVITY = 9.81  # [m/s^2]
 TYPICAL_CDA = 0.30  # [m^2]
 TYPICAL_CRR = 0.005
 TYPICAL_DENSITY = 1.2  # [kg/m^3]
-SIGN_REVERSED = (-1.0, -1.0, 1.0)  # of each signal when the same ground is ridden the other way
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -41,7 +40,7 @@ class Pattern:
     @property
     def length(self) -> float:
         """Range of the grid. [m]"""
-        return self.step * self.signals.shape[1]
+        return self.step * float(self.signals.shape[1])
 
 
 def pattern_of(run: TracedRun, mass: float, step: float) -> Pattern:
@@ -238,14 +237,16 @@ def match(reference: FloatArray, pattern: FloatArray, weights: FloatArray) -> Ma
 
     Notes
     -----
-    The other way round must agree better by 0.15, because most days go one way.
+    Only slopes tell which way the ground was ridden: speed the other way round is another signal. The other way
+    must agree better by 0.1, because most days go one way.
     """
-    forward = correlation_by_shift(reference, pattern, weights)
-    mirrored = pattern[:, ::-1] * np.array(SIGN_REVERSED)[:, None]
-    backward = correlation_by_shift(reference, mirrored, weights)
     bins = reference.shape[1]
-    ahead, behind = int(np.argmax(forward)), int(np.argmax(backward))
-    if backward[behind] > forward[ahead] + 0.15:
+    forward = correlation_by_shift(reference, pattern, weights)
+    ahead = int(np.argmax(forward))
+    slopes = weights * np.array([1.0, 1.0, 0.0])
+    backward = correlation_by_shift(reference, -pattern[:, ::-1], slopes)
+    behind = int(np.argmax(backward))
+    if backward[behind] > float(correlation_by_shift(reference, pattern, slopes).max()) + 0.1:
         return Match(peak(backward, behind) / bins % 1.0, -1.0, float(backward[behind]))
     return Match(peak(forward, ahead) / bins % 1.0, 1.0, float(forward[ahead]))
 
@@ -268,4 +269,4 @@ def correlation_by_shift(reference: FloatArray, pattern: FloatArray, weights: Fl
         product += w * np.fft.irfft(np.fft.rfft(r) * np.fft.rfft(p).conj(), bins)
         norm_r += w * float(r @ r)
         norm_p += w * float(p @ p)
-    return product / max(np.sqrt(norm_r * norm_p), 1e-12)
+    return np.asarray(product / max(np.sqrt(norm_r * norm_p), 1e-12))

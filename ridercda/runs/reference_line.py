@@ -212,7 +212,8 @@ def _normal_equations(
 
 def _derivative(coefficients: FloatArray, h: float, order: int) -> FloatArray:
     """Return the coefficients of a derivative of a uniform B-spline, whose degree is lower by `order`."""
-    return np.asarray(np.diff(coefficients, order) / h**order)
+    derivative: FloatArray = np.diff(coefficients, order) * h ** float(-order)
+    return derivative
 
 
 @njit(cache=True, nogil=True)

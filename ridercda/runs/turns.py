@@ -44,7 +44,7 @@ def u_turns(travelled: FloatArray, east: FloatArray, north: FloatArray) -> Float
     grid = np.arange(s[0], s[-1], GRID)
     gx, gy = np.interp(grid, s, x), np.interp(grid, s, y)
     ratio = _likeness(gx, gy, int(REACH[0] / GRID), int(REACH[1] / GRID))
-    turns = []
+    turns: list[float] = []
     for at in np.flatnonzero(ratio < LIKENESS):
         near = slice(max(at - int(REACH[1] / GRID), 0), at + int(REACH[1] / GRID) + 1)
         if ratio[at] == ratio[near].min() and (not turns or grid[at] - turns[-1] > REACH[1]):
