@@ -237,8 +237,8 @@ def match(reference: FloatArray, pattern: FloatArray, weights: FloatArray) -> Ma
 
     Notes
     -----
-    Only slopes tell which way the ground was ridden: speed the other way round is another signal. The other way
-    must agree better by 0.1, because most days go one way.
+    Only slopes tell which way the ground was ridden: speed the other way round is another signal. The other
+    way must agree better by 0.1, because most days go one way.
     """
     bins = reference.shape[1]
     forward = correlation_by_shift(reference, pattern, weights)

@@ -13,7 +13,7 @@ from ridercda.physics.track import TrackShape
 from ridercda.rides.ride import Ride
 from ridercda.runs.closure_placement import place_by_closure
 from ridercda.runs.gps_placement import place_loop_by_fixes, place_road_by_fixes
-from ridercda.runs.local_plane import plane_of
+from ridercda.runs.fixes import plane_of
 from ridercda.runs.placement import Placed, Placement, Scale
 from ridercda.runs.records import counted
 from ridercda.runs.reference_line import ReferenceLine

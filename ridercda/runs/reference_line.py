@@ -145,7 +145,7 @@ def draw_line(
         coefficients = _solve(station, east, north, weight, lo, h, spans, penalty)
     nodes = start + step * np.arange(steps if closed else steps + 1)
     values = [
-        _spline_at(_derivative(coefficients[:, axis], h, order), nodes, lo, h, 3 - order)
+        _spline_at(_derivative(coefficients[:, axis].copy(), h, order), nodes, lo, h, 3 - order)
         for order in range(3)
         for axis in range(2)
     ]
@@ -212,8 +212,9 @@ def _normal_equations(
 
 def _derivative(coefficients: FloatArray, h: float, order: int) -> FloatArray:
     """Return the coefficients of a derivative of a uniform B-spline, whose degree is lower by `order`."""
-    derivative: FloatArray = np.diff(coefficients, order) * h ** float(-order)
-    return derivative
+    for _ in range(order):
+        coefficients = (coefficients[1:] - coefficients[:-1]) / h
+    return coefficients
 
 
 @njit(cache=True, nogil=True)

@@ -8,8 +8,9 @@ from dataclasses import dataclass, replace
 import numpy as np
 import numpy.typing as npt
 
+from ridercda.physics.local_plane import LocalPlane
 from ridercda.rides.ride import LapTrigger, Ride
-from ridercda.runs.local_plane import LocalPlane, track_on
+from ridercda.runs.fixes import track_on
 from ridercda.runs.records import points_in
 from ridercda.runs.turns import u_turns
 from ridercda.runs.wheel_distance import DistanceSource, wheel_distance

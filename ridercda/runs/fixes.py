@@ -1,44 +1,16 @@
-"""Positions of a venue on a local plane, in metres east and north."""
+"""The fixes of rides on one plane, in metres east and north."""
 
 from __future__ import annotations
-
-from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
 
-from ridercda.physics.geodesy import ECCENTRICITY_SQUARED, EQUATORIAL_RADIUS
+from ridercda.physics.local_plane import LocalPlane
 from ridercda.rides.ride import Ride
 
 FloatArray = npt.NDArray[np.float64]
 
 FASTEST_MOVE = 40.0  # [m/s] a fix that needs a faster move to reach and to leave is a spike
-
-
-@dataclass(frozen=True, slots=True)
-class LocalPlane:
-    """A plane that touches the ellipsoid at (latitude, longitude); good to 2e-7 of 12 km."""
-
-    latitude: float  # [rad]
-    longitude: float  # [rad]
-
-    def project(self, latitude: FloatArray, longitude: FloatArray) -> tuple[FloatArray, FloatArray]:
-        """Return metres east and north of the origin; NaN stays NaN.
-
-        Notes
-        -----
-        The radii of curvature of the meridian and of the prime vertical on WGS84, the former and the cosine
-        at the middle latitude between the point and the origin.
-        """
-        middle = 0.5 * (latitude + self.latitude)
-        w = 1.0 - ECCENTRICITY_SQUARED * np.sin(middle) ** 2
-        meridian = EQUATORIAL_RADIUS * (1.0 - ECCENTRICITY_SQUARED) / w**1.5
-        vertical = EQUATORIAL_RADIUS / np.sqrt(w)
-        turn = np.remainder(longitude - self.longitude + np.pi, 2 * np.pi) - np.pi
-        return (
-            np.asarray(vertical * np.cos(middle) * turn),
-            np.asarray(meridian * (latitude - self.latitude)),
-        )
 
 
 def plane_of(rides: list[Ride]) -> LocalPlane | None:
