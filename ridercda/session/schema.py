@@ -106,7 +106,10 @@ class PowerCost:
             hint = hints.get(name)
             bare_watts = isinstance(hint, float | int) and form.kind is Kind.POWER
             fits = bare_watts or unit_symbol(hint, form.kind) is not None
-            result[name] = None if value is None else form.write(value, hint if fits else None)
+            text = None if value is None else form.write(value, hint if fits else None)
+            if isinstance(text, str) and form.kind is Kind.RATIO and unit_symbol(text, Kind.RATIO) is None:
+                text = f"{text} fraction"  # a bare number would be watts
+            result[name] = text
         return result
 
 

@@ -138,7 +138,7 @@ def test_a_comment_set_apart_stays_when_the_table_below_it_goes() -> None:
 def test_a_new_item_goes_after_its_neighbour() -> None:
     edited(
         DAY,
-        ("# the good one", '[[run]]\nid = "1b"\nstart = 5.0\n\n[run.air]\nhumidity = 0.5\n\n# the good one'),
+        ("# the good one", '[[run]]\nid = "1b"\nstart = 5.0\n[run.air]\nhumidity = 0.5\n\n# the good one'),
     )
 
 
@@ -167,8 +167,12 @@ def test_reordered_items_take_their_comments_and_sub_tables_along() -> None:
 
 def test_items_are_matched_by_id_then_by_content_then_by_order() -> None:
     old: list[TomlTable] = [{"id": "a"}, {"id": "b"}, {"x": 1}, {"x": 2}]
-    new: list[TomlTable] = [{"x": 2}, {"id": "b", "y": 1}, {"x": 3}, {"id": "c"}]
+    new: list[TomlTable] = [{"x": 2}, {"id": "b", "y": 1}, {"x": 3}, {"id": "c", "y": 2}]
     assert matches(old, new) == [3, 1, 2, None]
+    assert matches([{"id": "a", "y": 1}, {"id": "b"}], [{"id": "c", "y": 1}, {"id": "d", "y": 2}]) == [
+        0,
+        None,
+    ]
 
 
 def test_one_and_true_and_one_point_zero_are_different() -> None:
