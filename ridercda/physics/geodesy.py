@@ -89,6 +89,7 @@ def inverse(lat1: npt.ArrayLike, lon1: npt.ArrayLike, lat2: npt.ArrayLike, lon2:
             distance[at], azimuth[at] = _near_antipodal(
                 float(beta1[at]), float(beta2[at]), float(difference[at])
             )
+    azimuth = np.where(azimuth >= 2.0 * np.pi, 0.0, azimuth)  # rounding can give 2π itself
     same = (phi1 == phi2) & (difference == 0.0)
     return Geodesic(np.asarray(np.where(same, 0.0, distance)), np.asarray(np.where(same, 0.0, azimuth)))
 

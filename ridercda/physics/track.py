@@ -54,7 +54,7 @@ def lean(
     Raises
     ------
     ValueError
-        If a radius is not positive, a height is negative, or the mass would pass the centre of the bend.
+        If a radius is not positive or a height is negative.
 
     Notes
     -----
@@ -81,9 +81,7 @@ def lean(
         if not np.any(np.abs(step) > 4.0 * np.finfo(float).eps * tangent):
             break
     secant = np.sqrt(1.0 + tangent**2)
-    inward = height * tangent / secant
-    if np.any(inward >= radius):
-        raise ValueError("the mass would pass the centre of the bend: the radius is too small for its height")
+    inward = height * tangent / secant  # always short of the centre: c·t/√(1 + t²) < a
     return Lean(
         np.arctan(tangent), np.asarray(radius - inward), np.asarray(v * (1.0 - inward / radius)), secant
     )
@@ -190,4 +188,5 @@ class TrackShape:
         if self.transition_length > 0.0:
             turned = turned - 0.5 * in_transition**2 / self.transition_length
         left = np.pi * (half_laps + 0.5) + np.sign(from_apex) * turned / self.bend_radius
-        return np.asarray(-left % (2.0 * np.pi))
+        clockwise = -left % (2.0 * np.pi)
+        return np.asarray(np.where(clockwise >= 2.0 * np.pi, 0.0, clockwise))  # rounding can give 2π itself
