@@ -1,0 +1,126 @@
+"""The side of the window: the setups above, the details of what is picked below."""
+
+from __future__ import annotations
+
+from PySide6.QtCore import QSize, Qt, Signal
+from PySide6.QtWidgets import (
+    QButtonGroup,
+    QFrame,
+    QHBoxLayout,
+    QLabel,
+    QPushButton,
+    QScrollArea,
+    QSizePolicy,
+    QStackedWidget,
+    QVBoxLayout,
+    QWidget,
+)
+
+from ridercda.app.desk import Desk
+from ridercda.app.run_edits import RunEdits
+from ridercda.app.side.day_form import DayForm
+from ridercda.app.side.run_facts import RunFacts
+from ridercda.app.side.setup_form import SetupForm
+from ridercda.app.side.setup_list import SetupList
+from ridercda.app.theme import Type
+
+RUN, SETUP, DAY = "run", "setup", "day"
+WIDTH = 276
+
+
+class SidePanel(QWidget):
+    """Setups and details; it can be a column of the window or a drawer over it."""
+
+    exclude_requested = Signal(object)
+
+    def __init__(self, desk: Desk, runs: RunEdits, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self._desk = desk
+        px = desk.theme.px
+        self._heading = QLabel(self.tr("Setups"))
+        self._heading.setProperty("quiet", True)
+        add = QPushButton(self.tr("+ Setup"))
+        add.clicked.connect(runs.add_setup)
+        head = QHBoxLayout()
+        head.addWidget(self._heading, 1)
+        head.addWidget(add)
+        self.setups = SetupList(desk)
+        self.setups.edit_requested.connect(lambda _: self.show_details(SETUP))
+        self.setups.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Maximum)
+        self.facts = RunFacts(desk, runs)
+        self.facts.exclude_requested.connect(self.exclude_requested)
+        self._stack = QStackedWidget()
+        self._tabs = QButtonGroup(self)
+        line = QHBoxLayout()
+        line.setSpacing(0)
+        self._keys = {}
+        pages = (
+            (RUN, self.tr("Run"), self.facts),
+            (SETUP, self.tr("Setup"), SetupForm(desk, runs)),
+            (DAY, self.tr("Test day"), DayForm(desk)),
+        )
+        for place, (key, words, page) in enumerate(pages):
+            button = QPushButton(words)
+            button.setCheckable(True)
+            button.setProperty("page", True)
+            self._tabs.addButton(button, place)
+            self._keys[key] = place
+            line.addWidget(button)
+            self._stack.addWidget(_scrolled(page, px(14)))
+        line.addStretch(1)
+        self._tabs.idClicked.connect(self._stack.setCurrentIndex)
+        card = QFrame()
+        card.setObjectName("card")
+        inner = QVBoxLayout(card)
+        inner.setContentsMargins(1, 1, 1, 1)
+        inner.addWidget(self._stack)
+        outer = QVBoxLayout(self)
+        outer.setContentsMargins(0, 0, 0, 0)
+        outer.setSpacing(px(6))
+        outer.addLayout(head)
+        outer.addWidget(self.setups, 2)
+        outer.addSpacing(px(4))
+        outer.addLayout(line)
+        outer.addWidget(card, 3)
+        self.show_details(RUN)
+        desk.theme.changed.connect(self._on_theme_changed)
+        desk.selection.changed.connect(self._on_selection_changed)
+        self._seen = (desk.selection.run, desk.selection.setup)
+        self._on_theme_changed()
+
+    def show_details(self, key: str) -> None:
+        """Show the details of the run, the setup or the day."""
+        place = self._keys[key]
+        self._stack.setCurrentIndex(place)
+        self._tabs.button(place).setChecked(True)
+
+    def sizeHint(self) -> QSize:
+        """Ask for the width a figure with its interval needs."""
+        return QSize(self._desk.theme.px(WIDTH), self._desk.theme.px(400))
+
+    def _on_theme_changed(self) -> None:
+        self.setFixedWidth(self._desk.theme.px(WIDTH))
+        self._heading.setFont(self._desk.theme.font(Type.AXIS, strong=True))
+        for button in (*self._tabs.buttons(), *self.findChildren(QPushButton)):
+            button.setFont(self._desk.theme.font())
+
+    def _on_selection_changed(self) -> None:
+        run, setup = self._desk.selection.run, self._desk.selection.setup
+        if run and run != self._seen[0]:
+            self.show_details(RUN)
+        elif setup and setup != self._seen[1] and not run:
+            self.show_details(SETUP)
+        self._seen = (run, setup)
+
+
+def _scrolled(widget: QWidget, margin: int) -> QScrollArea:
+    area = QScrollArea()
+    area.setWidgetResizable(True)
+    area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+    area.setFocusPolicy(Qt.FocusPolicy.NoFocus)
+    inside = QWidget()
+    layout = QVBoxLayout(inside)
+    layout.setContentsMargins(margin, margin, margin, margin)
+    layout.addWidget(widget)
+    area.setWidget(inside)
+    return area
