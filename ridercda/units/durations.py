@@ -54,7 +54,7 @@ def parse_clock(text: str, key: str = "") -> float:
     match = CLOCK.fullmatch(text.strip())
     if match is None:
         raise QuantityError(f"{_where(key)}{text!r}: this is not a time; write it like '0:05:10'")
-    hours, minutes = int(match["hours"] or 0), int(match["minutes"])
+    hours, minutes = float(match["hours"] or 0), float(match["minutes"])
     seconds = float(match["seconds"].replace(",", "."))
     if seconds >= 60.0 or (match["hours"] is not None and minutes >= 60):
         raise QuantityError(f"{_where(key)}{text!r}: minutes and seconds go to 59; write it like '0:05:10'")

@@ -308,10 +308,12 @@ _TABLE: Mapping[Kind, KindUnits] = MappingProxyType(
                 Unit(
                     "1/K",
                     "1/kelvin",
-                    ("/K", "per K", "K^-1", "1/C", "1/degC", "1/°C", "per degC", "/°C", "/C"),
+                    ("/K", "per K", "K^-1", "1/C", "1/degC", "1/°C", "per degC", "/degC", "/°C", "/C"),
                 ),
                 Unit("%/K", "percent/kelvin", ("% per K", "%/C", "%/degC", "%/°C", "% per degC")),
-                Unit("1/°F", "1/delta_degree_fahrenheit", ("1/F", "1/degF", "/F", "per degF", "/°F")),
+                Unit(
+                    "1/°F", "1/delta_degree_fahrenheit", ("1/F", "1/degF", "/F", "per degF", "/degF", "/°F")
+                ),
                 Unit("%/°F", "percent/delta_degree_fahrenheit", ("%/F", "%/degF", "% per degF")),
             ),
             "1/K",
@@ -374,6 +376,7 @@ def symbols(kind: Kind) -> str:
 
 def _plain(text: str) -> str:
     joined = " ".join(text.translate(_SAME).replace("**", "^").replace("^-^", "^-").split())
+    joined = joined.replace("° ", "°")
     for sign in "*/^":
         joined = joined.replace(f" {sign}", sign).replace(f"{sign} ", sign)
     return joined
