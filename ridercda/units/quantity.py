@@ -113,7 +113,11 @@ def unit_symbol(value: object, kind: Kind) -> str | None:
 
 
 def quantity_text(value: float, kind: Kind, unit: str | None = None) -> str:
-    """Return a quantity as a text that `parse_quantity` reads back to the very same number.
+    """Return a quantity as the shortest text that `parse_quantity` reads back to the very same number.
+
+    What was once read from a text in the same unit always has such a text, and so has any number in the SI
+    unit. Where a unit's rounding leaves no text for a number, the text reads back one or two last places
+    away.
 
     Parameters
     ----------
