@@ -6,6 +6,7 @@ import datetime as dt
 import math
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
+from itertools import pairwise
 from types import MappingProxyType
 
 import numpy as np
@@ -28,7 +29,6 @@ from ridercda.synthetic.wind import WindSeries, blow, ornstein_uhlenbeck, report
 FloatArray = npt.NDArray[np.float64]
 
 RIDE = "day"
-DATE = dt.date(2026, 5, 9)
 UTC_OFFSET = 7200.0  # [s]
 
 
@@ -113,17 +113,16 @@ def simulate_day(spec: DaySpec, seed: int) -> SyntheticDay:
     truth = _truth(spec, place, setups, factors, around, ridden, calibrations.power_scale, time)
     time, channels = inject(time, channels, spec.faults)
     crossings = _crossings(ridden.crossings - spec.sensors.interval, of_paper)
+    # Nobody presses a button every 250 m.
+    presses = crossings.of_runs if isinstance(spec.venue, TrackVenue) else crossings.of_laps
     start = dt.datetime.combine(
-        DATE, dt.time(), dt.timezone(dt.timedelta(seconds=UTC_OFFSET))
+        spec.date, dt.time(), dt.timezone(dt.timedelta(seconds=UTC_OFFSET))
     ) + dt.timedelta(seconds=spec.start_of_day)
     ride = Ride(
         time=time,
         channels=MappingProxyType(channels),
         start=start,
-        laps=tuple(
-            LapMark(a, b, LapTrigger.MANUAL)
-            for a, b in zip(crossings.presses, crossings.presses[1:], strict=False)
-        ),
+        laps=tuple(LapMark(a, b, LapTrigger.MANUAL) for a, b in pairwise(presses)),
         source="text",
         device="invented",
     )
@@ -176,7 +175,7 @@ def _expected_duration(spec: DaySpec, place: Place, targets: FloatArray) -> floa
     between = spec.pause + (spec.roll_out + spec.approach) / 4.0 if place.turns_back else 0.0
     if not place.turns_back:
         between = spec.easy_time + spec.settle_time + (place.gate / 8.0)
-    return float((place.lap / speeds).sum() + len(targets) * between + 60.0)
+    return float((place.lap / speeds).sum() + len(targets) * between + 60.0 + spec.warm_up)
 
 
 def _surroundings(
@@ -257,8 +256,8 @@ def _ride(
         spec.wheel_inertia / radius**2, spec.venue.mass_height, spec.sensors.power.efficiency,
         rider.response_time, rider.grade_response, rider.effort_slope, rider.effort_reference,
         rider.speed_slope, rider.speed_reference, rider.yaw_square, spec.easy_power, spec.pause,
-        spec.roll_out, spec.approach, spec.easy_time, spec.settle_time, position, distance, power, air, east,
-        north, braked, balance, run_of_step, crossings,
+        spec.roll_out, spec.approach, spec.easy_time, spec.settle_time, spec.warm_up, position, distance,
+        power, air, east, north, braked, balance, run_of_step, crossings,
     )  # fmt: skip
     if used < 0:
         return None

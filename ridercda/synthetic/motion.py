@@ -132,6 +132,7 @@ def ride(
     approach: float,
     easy_time: float,
     settle_time: float,
+    warm_up: float,
     position: FloatArray,
     distance: FloatArray,
     power: FloatArray,
@@ -143,7 +144,7 @@ def ride(
     run_of_step: IntArray,
     lap_crossings: FloatArray,
 ) -> int:
-    """Ride the day; fill the arrays after `settle_time` and return the steps used, -1 if they were too few.
+    """Ride the day; fill the arrays after `warm_up` and return the steps used, -1 if they were too few.
 
     Power, winds and braking are means over a step; position, distance and air speed stand at its end.
     `balance` holds, per step, the energy before, the energy after, and the work of wheel power less losses
@@ -159,6 +160,12 @@ def ride(
     run = 0
     direction = 1.0
     place = start - (approach if turns_back else 300.0)
+    since = 0.0
+    if warm_up > 0.0:
+        phase = EASY
+        if turns_back:
+            place -= 8.0 * warm_up
+        since = easy_time - warm_up
     line_at = start  # where the next run starts
     ends_at = 0.0
     lap_now = 0
@@ -166,7 +173,6 @@ def ride(
     speed = 3.0
     pedal = 0.5 * easy_power
     trim = 0.0
-    since = 0.0
     mass = runs[0, MASS]
     tyres = int(runs[0, TYRES])
     cda = runs[0, CDA]
@@ -315,14 +321,14 @@ def ride(
             fresh = 1
         elif phase == EASY:
             since += dt
-            if since >= easy_time:
+            if (place >= line_at - approach) if turns_back else (since >= easy_time):
                 phase = SETTLE
                 since = 0.0
                 if gate > 0.0:  # the first line to come after the rider is up to speed
                     line_at = start + gate * math.ceil((place + settle_time * 9.0 - start) / gate)
         elif phase == DONE:
             since += dt
-            if since > 5.0:
+            if since > 20.0:
                 return i + 1
         if phase in (STAND, SETTLE) and since == 0.0 and run < count:
             mass = runs[run, MASS]

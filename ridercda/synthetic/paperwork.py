@@ -37,10 +37,14 @@ class Crossings:
     pressed: FloatArray
 
     @property
-    def presses(self) -> tuple[float, ...]:
-        """Every press of the day in order, the start of the ride first."""
-        flat = np.sort(np.concatenate(([0.0], self.pressed.ravel())))
-        return tuple(float(t) for t in flat)
+    def of_laps(self) -> tuple[float, ...]:
+        """The presses of a rider who marks every lap, the start of the ride first."""
+        return (0.0, *(float(t) for t in self.pressed.ravel()))
+
+    @property
+    def of_runs(self) -> tuple[float, ...]:
+        """The presses of a rider who marks where runs begin and end, the start of the ride first."""
+        return (0.0, *(float(t) for t in self.pressed[:, [0, -1]].ravel()))
 
 
 def session_document(

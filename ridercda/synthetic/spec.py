@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import datetime as dt
 from dataclasses import dataclass, field, replace
 from enum import StrEnum
 
@@ -115,7 +116,10 @@ class DaySpec:
         Ridden past the line, and before it, when turning back. [m]
     easy_time, settle_time : float
         Easy riding, then riding up to speed, where the rider goes straight on. [s]
+    warm_up : float
+        Easy riding before the first run. [s]
     lap_times : LapTimes
+    date : date
     start_of_day : float
         [s since midnight]
     step : float
@@ -144,7 +148,9 @@ class DaySpec:
     approach: float = 200.0
     easy_time: float = 60.0
     settle_time: float = 30.0
+    warm_up: float = 0.0
     lap_times: LapTimes = LapTimes.EXACT
+    date: dt.date = dt.date(2026, 5, 9)
     start_of_day: float = 9 * 3600.0
     step: float = 0.05
 
