@@ -5,7 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from ridercda.app.document import SessionDocument
+from ridercda.app.laps import LapTraces
 from ridercda.app.letters import Badge, badges
+from ridercda.app.proposals import Proposals
 from ridercda.app.quantities import UnitChoice
 from ridercda.app.selection import Selection
 from ridercda.app.settings import Settings
@@ -27,6 +29,8 @@ class Desk:
     selection: Selection
     shelf: RideShelf
     solving: Solving
+    proposals: Proposals
+    laps: LapTraces
     reader: Worker
     solver: Worker
 
@@ -55,4 +59,6 @@ def build_desk(settings: Settings) -> Desk:
     reader, solver = Worker("ridercda-reader"), Worker("ridercda-solver")
     shelf = RideShelf(document, reader)
     solving = Solving(document, shelf, solver)
-    return Desk(theme, units, settings, document, selection, shelf, solving, reader, solver)
+    proposals = Proposals(document, shelf, reader)
+    laps = LapTraces(solving, solver)
+    return Desk(theme, units, settings, document, selection, shelf, solving, proposals, laps, reader, solver)

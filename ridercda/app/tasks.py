@@ -6,7 +6,7 @@ from pathlib import Path
 
 from ridercda.drag.estimate import Estimate
 from ridercda.rides.ride import Ride
-from ridercda.session.document import RideEntry, Session
+from ridercda.session.document import RideEntry, Run, Session
 from ridercda.watch import Watch
 
 
@@ -17,4 +17,14 @@ def read_ride(watch: Watch, path: Path, entry: RideEntry, utc_offset: float | No
 
 def solve(watch: Watch, session: Session, folder: Path | None, fresh: dict[str, Ride], rides: tuple[str, ...]) -> Estimate:
     """Return the estimate of a session."""
+    raise NotImplementedError
+
+
+def propose_runs(watch: Watch, ride_id: str, ride: Ride, session: Session) -> tuple[Run, ...]:
+    """Return the runs proposed for a ride."""
+    raise NotImplementedError
+
+
+def lap_traces(watch: Watch) -> object:
+    """Return the laps of the day last solved."""
     raise NotImplementedError

@@ -8,7 +8,6 @@ from dataclasses import dataclass
 
 import numpy as np
 from PySide6.QtCore import QCoreApplication
-from scipy.special import fdtri
 
 from ridercda.app.desk import Desk
 from ridercda.app.drag_words import against_baseline, verdict_words
@@ -132,8 +131,7 @@ def regions(desk: Desk, estimate: Estimate) -> tuple[Region, ...]:
         covariance = estimate.covariance[np.ix_(pick, pick)]
         if not np.isfinite(covariance).all() or covariance[0, 0] <= 0:
             continue
-        freedom = min(estimate.degrees_of_freedom, 1e6)
-        radius = math.sqrt(2.0 * float(fdtri(2.0, freedom, estimate.confidence)))
+        radius = joint_radius(estimate.degrees_of_freedom, estimate.confidence)
         centre = (float(estimate.values[pick[0]]), float(estimate.values[pick[1]]))
         badge = badges[setup_id]
         name = _tr("{name}: region that holds CdA and Crr with {share} %").format(
@@ -143,6 +141,18 @@ def regions(desk: Desk, estimate: Estimate) -> tuple[Region, ...]:
             Region(setup_id, name, desk.theme.chip(badge.index), badge.letter, centre, ellipse(centre, covariance, radius))
         )
     return tuple(result)
+
+
+def joint_radius(degrees_of_freedom: float, confidence: float) -> float:
+    """Return how many standard deviations out the joint region of two figures reaches.
+
+    The square is twice the quantile of Fisher's F with 2 and nu degrees of freedom, which has a closed form:
+    (nu/2) ((1 - p)^(-2/nu) - 1), and -ln(1 - p) in the limit.
+    """
+    if degrees_of_freedom > 1e6:
+        return math.sqrt(-2.0 * math.log1p(-confidence))
+    half = degrees_of_freedom / 2.0
+    return math.sqrt(2.0 * half * ((1.0 - confidence) ** (-1.0 / half) - 1.0))
 
 
 @dataclass(frozen=True, slots=True)

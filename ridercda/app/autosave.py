@@ -1,0 +1,129 @@
+"""What is not saved yet is kept aside every few seconds, and found again after a crash."""
+
+from __future__ import annotations
+
+import json
+import os
+import shutil
+import uuid
+from dataclasses import dataclass
+from pathlib import Path
+
+import platformdirs
+from PySide6.QtCore import QObject, QSaveFile, QTimer
+
+from ridercda.app.document import SessionDocument
+from ridercda.errors import SessionError
+from ridercda.session.document import Session
+from ridercda.session.save import text_of_new
+from ridercda.session.store import FILE_NAME, load_session
+
+EVERY = 2000  # ms after the first change that is not kept yet
+_ORIGIN = "origin.json"
+
+
+def kept_root() -> Path:
+    """Return where unsaved work is kept."""
+    return Path(platformdirs.user_state_dir("RiderCdA", appauthor=False)) / "unsaved"
+
+
+@dataclass(frozen=True, slots=True)
+class Kept:
+    """Work of an earlier start that was not saved."""
+
+    place: Path
+    session: Session
+    folder: Path | None  # where it belongs
+
+
+class Autosave(QObject):
+    """Follows the document; writes whole files only."""
+
+    def __init__(self, document: SessionDocument, root: Path | None = None, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._document = document
+        self._root = root or kept_root()
+        self._place: Path | None = None
+        self._timer = QTimer(self, singleShot=True, interval=EVERY)
+        self._timer.timeout.connect(self.keep)
+        document.session_changed.connect(self._on_session_changed)
+        document.session_opened.connect(self.forget)
+        document.undo_stack.cleanChanged.connect(self._on_clean_changed)
+
+    def _on_session_changed(self) -> None:
+        if not self._timer.isActive():
+            self._timer.start()
+
+    def _on_clean_changed(self, clean: bool) -> None:  # noqa: FBT001 - Qt's signal
+        if clean:
+            self.forget()
+
+    def keep(self) -> None:
+        """Keep the session aside, if it is not saved."""
+        self._timer.stop()
+        if self._document.undo_stack.isClean():
+            return
+        if self._place is None:
+            self._place = self._root / uuid.uuid4().hex
+            self._place.mkdir(parents=True, exist_ok=True)
+            origin = {"folder": str(self._document.folder or ""), "process": os.getpid()}
+            _write_whole(self._place / _ORIGIN, json.dumps(origin))
+        _write_whole(self._place / FILE_NAME, text_of_new(self._document.session))
+
+    def forget(self) -> None:
+        """Drop what is kept: it is saved, or given up."""
+        self._timer.stop()
+        if self._place is not None:
+            shutil.rmtree(self._place, ignore_errors=True)
+            self._place = None
+
+    def adopt(self, kept: Kept) -> None:
+        """Go on with work of an earlier start, in its place."""
+        self.forget()
+        self._place = kept.place
+        origin = {"folder": str(kept.folder or ""), "process": os.getpid()}
+        _write_whole(kept.place / _ORIGIN, json.dumps(origin))
+
+
+def unsaved_work(root: Path | None = None) -> tuple[Kept, ...]:
+    """Return what earlier starts left unsaved, the newest first; what a running program keeps is its own."""
+    root = root or kept_root()
+    found = []
+    for origin in root.glob(f"*/{_ORIGIN}"):
+        try:
+            about = json.loads(origin.read_text(encoding="utf-8"))
+            session = load_session(origin.parent).session
+        except (OSError, ValueError, SessionError):
+            continue
+        if _is_running(int(about.get("process", 0))):
+            continue
+        folder = Path(about["folder"]) if about.get("folder") else None
+        found.append((origin.stat().st_mtime, Kept(origin.parent, session, folder)))
+    return tuple(kept for _, kept in sorted(found, key=lambda each: -each[0]))
+
+
+def drop(kept: Kept) -> None:
+    """Give up work of an earlier start."""
+    shutil.rmtree(kept.place, ignore_errors=True)
+
+
+def _is_running(process: int) -> bool:
+    if process <= 0 or process == os.getpid():
+        return process == os.getpid()
+    if os.name != "posix":
+        return False
+    try:
+        os.kill(process, 0)
+    except ProcessLookupError:
+        return False
+    except PermissionError:
+        return True
+    return True
+
+
+def _write_whole(path: Path, text: str) -> None:
+    """Write a file so that it is there whole or not at all."""
+    file = QSaveFile(str(path))
+    if file.open(QSaveFile.OpenModeFlag.WriteOnly):
+        file.write(text.encode("utf-8"))
+        file.commit()

@@ -1,0 +1,134 @@
+"""The few dialogs: units per quantity, columns of a text file, keyboard, cautions, about."""
+
+from __future__ import annotations
+
+from PySide6.QtCore import Qt
+from PySide6.QtGui import QKeySequence
+from PySide6.QtWidgets import QDialog, QDialogButtonBox, QLabel, QMessageBox, QScrollArea, QVBoxLayout, QWidget
+
+import ridercda
+from ridercda.app.actions import Action
+from ridercda.app.cautions import caution_texts
+from ridercda.app.desk import Desk
+from ridercda.app.quantities import CHOOSABLE
+from ridercda.app.theme import Type
+from ridercda.app.widgets.field import TextField
+from ridercda.app.widgets.form import Choice, Form
+from ridercda.rides.ride import CHANNELS
+from ridercda.session import edits
+from ridercda.units import UnitSystem, kind_units
+
+
+class _Framed(QDialog):
+    def __init__(self, parent: QWidget, desk: Desk, title: str) -> None:
+        super().__init__(parent)
+        self.setWindowTitle(title)
+        px = desk.theme.px
+        self.column = QVBoxLayout(self)
+        self.column.setContentsMargins(px(20), px(16), px(20), px(16))
+        self.column.setSpacing(px(12))
+        head = QLabel(title)
+        head.setFont(desk.theme.font(Type.PAGE, strong=True))
+        self.column.addWidget(head)
+
+    def finish(self, buttons: QDialogButtonBox.StandardButton) -> None:
+        box = QDialogButtonBox(buttons)
+        box.accepted.connect(self.accept)
+        box.rejected.connect(self.reject)
+        self.column.addWidget(box)
+
+
+class UnitsDialog(_Framed):
+    """Metric or imperial, per quantity; what is chosen holds at once."""
+
+    def __init__(self, parent: QWidget, desk: Desk) -> None:
+        super().__init__(parent, desk, parent.tr("Units for each quantity"))
+        form = Form(desk.theme)
+        for kind in CHOOSABLE:
+            units = kind_units(kind)
+            options = ((UnitSystem.METRIC.value, units.metric[0]), (UnitSystem.IMPERIAL.value, units.imperial[0]))
+            choice = Choice(desk.theme, options)
+            choice.set_key(desk.units.units.of(kind).value)
+            choice.activated.connect(lambda _, k=kind, c=choice: desk.units.choose_for(k, UnitSystem(c.key)))
+            form.row(kind.value.capitalize(), choice)
+        self.column.addWidget(form)
+        self.finish(QDialogButtonBox.StandardButton.Close)
+        self.resize(desk.theme.px(360), self.sizeHint().height())
+
+
+class ColumnsDialog(_Framed):
+    """Which column of a text file holds which channel; empty where the file says so itself."""
+
+    def __init__(self, parent: QWidget, desk: Desk, ride_id: str) -> None:
+        super().__init__(parent, desk, parent.tr("Columns of {}").format(ride_id))
+        self._desk, self._ride = desk, ride_id
+        note = QLabel(self.tr("Write the heading of the column as it stands in the file; a unit may follow in brackets, like Tempo [km/h]."))
+        note.setWordWrap(True)
+        note.setProperty("quiet", True)
+        self.column.addWidget(note)
+        form = Form(desk.theme)
+        entry = desk.session.ride(ride_id)
+        self._fields = {}
+        for channel in ("time", *CHANNELS, "lap"):
+            field = TextField(desk.theme)
+            field.set_value(entry.columns.get(channel, ""))
+            form.row(channel.replace("_", " ").capitalize(), field)
+            self._fields[channel] = field
+        self.column.addWidget(form)
+        self.finish(QDialogButtonBox.StandardButton.Ok | QDialogButtonBox.StandardButton.Cancel)
+        self.resize(desk.theme.px(420), self.sizeHint().height())
+
+    def accept(self) -> None:
+        """Push the edit."""
+        columns = {channel: text for channel, field in self._fields.items() if (text := field.text().strip())}
+        if self._desk.document.edit(
+            self.tr("Set columns of {}").format(self._ride), lambda s: edits.set_ride_columns(s, self._ride, columns)
+        ) or columns == dict(self._desk.session.ride(self._ride).columns):
+            super().accept()
+
+
+def show_keys(parent: QWidget, actions: tuple[Action, ...]) -> None:
+    """Show shortcuts and what the strip understands."""
+    strip = (
+        ("← →", parent.tr("previous, next run (Shift: pick several)")),
+        ("[  ]", parent.tr("take the start, the end of the run; ← → then move it by 1 s, Shift by 10 s, Enter lets go")),
+        ("A … Z", parent.tr("say in which setup the picked runs were ridden; the next free letter makes a setup")),
+        ("Ins", parent.tr("new run after the picked one")),
+        ("Del", parent.tr("remove the picked runs")),
+        ("+ − 0", parent.tr("closer, wider, whole day")),
+    )
+    rows = "".join(f"<tr><td style='padding:2px 16px 2px 0'><b>{keys}</b></td><td>{words}</td></tr>" for keys, words in strip)
+    menu = "".join(
+        f"<tr><td style='padding:2px 16px 2px 0'><b>{QKeySequence(a.shortcut).toString(QKeySequence.SequenceFormat.NativeText)}</b></td>"
+        f"<td>{a.text}</td></tr>"
+        for a in actions
+        if a.shortcut
+    )
+    text = f"<h3>{parent.tr('In the day strip')}</h3><table>{rows}</table><h3>{parent.tr('Everywhere')}</h3><table>{menu}</table>"
+    dialog = QDialog(parent)
+    dialog.setWindowTitle(parent.tr("Keyboard"))
+    label = QLabel(text)
+    label.setTextFormat(Qt.TextFormat.RichText)
+    label.setWordWrap(True)
+    label.setContentsMargins(16, 8, 16, 8)
+    area = QScrollArea()
+    area.setWidgetResizable(True)
+    area.setWidget(label)
+    layout = QVBoxLayout(dialog)
+    layout.addWidget(area)
+    dialog.resize(560, 620)
+    dialog.exec()
+
+
+def show_cautions(parent: QWidget) -> None:
+    """Show the cautions."""
+    QMessageBox.information(parent, parent.tr("Cautions"), "\n\n".join(caution_texts()))
+
+
+def show_about(parent: QWidget) -> None:
+    """Say what this is, and under which licences its font comes."""
+    text = parent.tr(
+        "RiderCdA {version}\n\nDrag area and rolling resistance from ride files, with honest intervals, and what they are worth on a course.\n\n"
+        "MIT licence. The typeface Source Sans Pro is under the SIL Open Font License 1.1."
+    ).format(version=ridercda.__version__)
+    QMessageBox.about(parent, parent.tr("About RiderCdA"), text)

@@ -1,0 +1,158 @@
+"""Runs: proposed ones to accept, the table of runs, and every lap against the profile of the venue."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from PySide6.QtWidgets import QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
+
+from ridercda.app.desk import Desk
+from ridercda.app.figures import clock, duration, elapsed, plus_minus, value_text
+from ridercda.app.letters import Badge
+from ridercda.app.pages.lap_view import LapOverlay
+from ridercda.app.pages.page import Blank, Page
+from ridercda.app.quantities import plain
+from ridercda.app.reasons import reason_menu
+from ridercda.app.run_edits import RunEdits
+from ridercda.app.side.run_facts import wind_text
+from ridercda.app.strip.picture import axis_of
+from ridercda.app.theme import Type
+from ridercda.app.widgets.card import Card
+from ridercda.app.widgets.table import Column, TableModel, TableView
+from ridercda.drag.estimate import RunEstimate
+from ridercda.session.document import Run
+from ridercda.units import Kind
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class RunRow:
+    """A run in the table."""
+
+    run: Run
+    badge: Badge
+    moment: float  # start, seconds of the day
+    dated: bool
+    length: float | None  # [s]
+    figure: RunEstimate | None
+
+
+class RunsPage(Page):
+    """Table and overlay."""
+
+    def __init__(self, desk: Desk, runs: RunEdits) -> None:
+        super().__init__(desk, runs)
+        px = self.theme.px
+        self._model = TableModel[RunRow](self._columns(), key=lambda row: row.run.id, quiet=lambda row: bool(row.run.excluded))
+        self._table = TableView(self.theme, self._model)
+        self._table.keys_picked.connect(desk.selection.pick_runs)
+        self._card = Card(self.theme, self.tr("Runs of the day"))
+        self._offer = QWidget()
+        line = QHBoxLayout(self._offer)
+        line.setContentsMargins(0, 0, 0, 0)
+        self._offer_words = QLabel()
+        self._offer_words.setWordWrap(True)
+        self._offer_words.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Preferred)
+        self._accept = QPushButton(self.tr("Accept"))
+        self._accept.setProperty("main", True)
+        self._accept.clicked.connect(lambda: self.asked.emit("run.accept", None))
+        line.addWidget(self._offer_words, 1)
+        line.addWidget(self._accept)
+        self._card.body.addWidget(self._offer)
+        self._card.body.addWidget(self._table, 1)
+        self._leave_out = QPushButton(self.tr("Leave out"))
+        self._leave_out.setMenu(reason_menu(self, lambda reason: runs.exclude(desk.selection.runs, reason)))
+        self._count = QPushButton(self.tr("Count again"))
+        self._count.clicked.connect(lambda: runs.include(desk.selection.runs))
+        self._merge = QPushButton(self.tr("Merge"))
+        self._merge.clicked.connect(lambda: runs.merge(desk.selection.runs))
+        self._remove = QPushButton(self.tr("Remove"))
+        self._remove.clicked.connect(lambda: runs.remove(desk.selection.runs))
+        self._buttons = (self._leave_out, self._count, self._merge, self._remove)
+        line = QHBoxLayout()
+        for button in self._buttons:
+            line.addWidget(button)
+        line.addStretch(1)
+        self._card.body.addLayout(line)
+        self._overlay = LapOverlay(desk)
+        layout = QVBoxLayout(self.content)
+        layout.setContentsMargins(0, 0, 0, 0)
+        layout.setSpacing(px(12))
+        layout.addWidget(self._card, 6)
+        layout.addWidget(self._overlay, 5)
+        self.follow(desk.proposals.changed)
+
+    def _columns(self) -> tuple[Column[RunRow], ...]:
+        units = self.desk.units
+
+        def figure(kind: Kind, name: str, digits: int | None = None) -> Column[RunRow]:
+            titles = {
+                "power": self.tr("Power"), "speed": self.tr("Speed"), "air_density": self.tr("Air density"),
+            }  # fmt: skip
+            return Column(
+                f"{titles[name]} [{units.symbol(kind)}]",
+                lambda row: units.number(getattr(row.figure, name, None), kind, digits),
+                raw=lambda row: getattr(row.figure, name, None),
+            )
+
+        return (
+            Column(self.tr("Run"), lambda r: r.run.id, raw=lambda r: float(r.run.id) if r.run.id.isdigit() else r.run.id, chip=lambda r: r.badge),
+            Column(self.tr("Setup"), lambda r: r.badge.name, tip=lambda r: r.badge.name),
+            Column(self.tr("Starts"), lambda r: clock(r.moment) if r.dated else elapsed(r.run.start), raw=lambda r: r.moment),
+            Column(self.tr("Length"), lambda r: "–" if r.length is None else duration(r.length), raw=lambda r: r.length),
+            Column(self.tr("Laps"), lambda r: str(r.figure.laps) if r.figure else "–", raw=lambda r: float(r.figure.laps) if r.figure else None),
+            figure(Kind.POWER, "power"),
+            figure(Kind.SPEED, "speed"),
+            figure(Kind.DENSITY, "air_density"),
+            Column(self.tr("Wind"), lambda r: wind_text(self.desk, r.figure) if r.figure else "–", raw=lambda r: r.figure.wind_speed if r.figure else None),
+            Column(self.tr("CdA [m²]"), lambda r: f"{value_text(r.figure.cda)} {plus_minus(r.figure.cda)}" if r.figure and r.figure.cda else "–",
+                   raw=lambda r: r.figure.cda.value if r.figure and r.figure.cda else None),
+            Column(self.tr("vs repeats [σ]"), lambda r: "–" if r.figure is None or r.figure.against_repeats is None else plain(r.figure.against_repeats, 1, signed=True),
+                   raw=lambda r: r.figure.against_repeats if r.figure else None,
+                   header_tip=self.tr("How far this run lies from its repeats, in standard errors")),
+            Column(self.tr("Left out because"), lambda r: r.run.excluded, tip=lambda r: r.run.note or r.run.excluded),
+        )  # fmt: skip
+
+    def blank(self) -> Blank | None:
+        """Say how runs come to be."""
+        if self.desk.session.runs or self.desk.proposals.runs:
+            return None
+        if not self.desk.session.rides:
+            return Blank(
+                self.tr("No rides yet"), self.tr("Runs are cut from the rides of the day."), "ride.add", self.tr("Add ride files…")
+            )
+        if self.desk.shelf.reading or self.desk.proposals.is_busy:
+            return Blank(self.tr("Looking for runs…"), self.tr("Laps that repeat are found in the rides and proposed as runs."))
+        return Blank(
+            self.tr("No runs found by themselves"),
+            self.tr("Drag over the day strip where a setup was ridden; letter keys say which setup it was."),
+        )
+
+    def refresh(self) -> None:
+        """Show runs and laps."""
+        desk = self.desk
+        for button in (*self._buttons, self._accept):
+            button.setFont(self.theme.font())
+        self._offer_words.setFont(self.theme.font(Type.PAGE))
+        proposed = desk.proposals.runs
+        self._offer.setVisible(bool(proposed))
+        self._offer_words.setText(self.tr("%n run(s) proposed; they stand dashed in the day strip.", "", len(proposed)))
+        rides = desk.shelf.rides()
+        axis = axis_of(desk.session, rides)
+        badges = desk.badges()
+        estimate = desk.solving.estimate
+        figures = {run.id: run for run in estimate.runs} if estimate else {}
+        rows = []
+        for run in desk.session.runs:
+            ride = rides.get(run.ride)
+            end = run.end if run.end is not None else float(ride.time[-1]) if ride is not None and ride.time.size else None
+            length = end - run.start if end is not None else None
+            rows.append(RunRow(run, badges[run.setup], axis.offsets.get(run.ride, 0.0) + run.start, axis.dated, length, figures.get(run.id)))
+        self._model.set_columns(self._columns())
+        self._model.set_rows(tuple(rows))
+        self._table.show_keys(desk.selection.runs)
+        picked = [run for run in desk.session.runs if run.id in desk.selection.runs]
+        self._leave_out.setEnabled(any(not run.excluded for run in picked))
+        self._count.setEnabled(any(run.excluded for run in picked))
+        self._merge.setEnabled(len(picked) > 1)
+        self._remove.setEnabled(bool(picked))
+        self._overlay.refresh()
