@@ -8,6 +8,7 @@ from PySide6.QtCore import QObject, QPointF, Qt, QTemporaryDir
 from PySide6.QtGui import QImage, QPainter, QPen
 from PySide6.QtWidgets import QApplication, QStyleFactory
 
+from ridercda.app.plurals import EnglishPlurals
 from ridercda.app.stylesheet import stylesheet
 from ridercda.app.theme import Theme, load_fonts
 
@@ -20,6 +21,7 @@ def application() -> QApplication:
     app.setOrganizationName("RiderCdA")
     app.setStyle(QStyleFactory.create("Fusion"))
     load_fonts()
+    app.installTranslator(EnglishPlurals(app))
     return app
 
 

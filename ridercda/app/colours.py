@@ -47,7 +47,7 @@ LIGHT = Roles(
     caution_ground="#fbf3e0",
     bad_ground="#fbebe9",
     power="#5f6873",
-    speed="#8a6f8f",
+    speed="#8c5fa0",
 )
 DARK = Roles(
     paper="#14181d",
@@ -67,7 +67,7 @@ DARK = Roles(
     caution_ground="#332a17",
     bad_ground="#3a211f",
     power="#9aa4b0",
-    speed="#b79bbd",
+    speed="#c09bd0",
 )
 
 

@@ -8,6 +8,7 @@ from PySide6.QtCore import QTimer
 from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QToolButton, QWidget
 
 from ridercda.app.theme import Theme
+from ridercda.app.widgets.flags import set_flag
 
 
 class Notice(QFrame):
@@ -51,9 +52,7 @@ class Notice(QFrame):
         self._timer.start()
 
     def _show(self, words: str, actions: tuple[tuple[str, Callable[[], None]], ...], *, bad: bool) -> None:
-        self.setProperty("bad", bad)
-        self.style().unpolish(self)
-        self.style().polish(self)
+        set_flag(self, "bad", on=bad)
         self._words.setFont(self._theme.font())
         self._words.setText(words)
         self.setAccessibleName(words)

@@ -36,6 +36,9 @@ QPushButton[main="true"] { background: $accent; color: $on_accent; padding: ${s6
 QPushButton[main="true"]:hover { background: $accent_hover; }
 QPushButton[main="true"]:focus { border: 1px solid $ink; }
 QPushButton[main="true"]:disabled { background: $hairline; color: $quiet; }
+QPushButton[flush="true"] { padding: ${s4}px 0; border: 0; }
+QPushButton[flush="true"]:hover { background: transparent; color: $ink; }
+QPushButton[flush="true"]:focus { color: $ink; }
 QPushButton[framed="true"] { border: 1px solid $hairline; background: $card; }
 QPushButton[framed="true"]:focus { border: 1px solid $accent; }
 QPushButton[page="true"] { color: $quiet; border: 0; border-bottom: ${s2}px solid transparent; border-radius: 0;
@@ -68,13 +71,13 @@ QTableView::item:hover, QListView::item:hover { background: $hover; }
 QTableView::item:selected, QListView::item:selected { background: $chosen; color: $ink; }
 QHeaderView { background: transparent; border: 0; }
 QHeaderView::section { background: $card; color: $quiet; border: 0; border-bottom: 1px solid $hairline;
-  padding: ${s4}px ${s6}px; }
+  padding: ${s4}px ${s9}px; }
 QTableCornerButton::section { background: transparent; border: 0; }
 QScrollArea { background: transparent; border: 0; }
 QScrollArea > QWidget > QWidget { background: transparent; }
-QScrollBar:vertical { background: transparent; width: ${s10}px; margin: 0; }
-QScrollBar:horizontal { background: transparent; height: ${s10}px; margin: 0; }
-QScrollBar::handle { background: $hairline; border-radius: ${s4}px; margin: ${s2}px; }
+QScrollBar:vertical { background: transparent; width: ${s8}px; margin: 0; }
+QScrollBar:horizontal { background: transparent; height: ${s8}px; margin: 0; }
+QScrollBar::handle { background: $hairline; border-radius: ${s2}px; margin: ${s2}px; }
 QScrollBar::handle:vertical { min-height: ${s24}px; } QScrollBar::handle:horizontal { min-width: ${s24}px; }
 QScrollBar::handle:hover { background: $axis; }
 QScrollBar::add-line, QScrollBar::sub-line { width: 0; height: 0; }
@@ -103,7 +106,7 @@ def stylesheet(theme: Theme, arrow: str) -> str:
     """
     roles = theme.roles
     names = {name: getattr(roles, name) for name in roles.__slots__}
-    sizes = {f"s{size}": str(theme.px(size)) for size in (2, 4, 6, 8, 10, 12, 16, 20, 24)}
+    sizes = {f"s{size}": str(theme.px(size)) for size in (2, 4, 6, 8, 9, 10, 12, 16, 20, 24)}
     return _SHEET.substitute(
         names,
         **sizes,

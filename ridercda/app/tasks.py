@@ -12,7 +12,13 @@ from ridercda.watch import Watch
 
 def read_ride(watch: Watch, path: Path, entry: RideEntry, utc_offset: float | None) -> Ride:
     """Return a ride of the session, read and repaired as the session says."""
-    raise NotImplementedError
+    from ridercda.rides.format import ReadOptions
+    from ridercda.rides.reader import read_ride as read
+
+    options = ReadOptions.with_columns(
+        entry.columns, start=entry.start, power_channel=entry.power_channel, wheel_circumference=entry.wheel_circumference
+    )
+    return read(path, options, watch)
 
 
 def solve(watch: Watch, session: Session, folder: Path | None, fresh: dict[str, Ride], rides: tuple[str, ...]) -> Estimate:

@@ -18,6 +18,7 @@ from ridercda.app.widgets.ellipse_chart import EllipseChart
 from ridercda.app.widgets.interval_chart import IntervalChart
 from ridercda.app.widgets.run_chart import RunChart
 from ridercda.app.widgets.share_chart import ShareChart
+from ridercda.app.widgets.flags import set_flag
 from ridercda.app.widgets.table import TableModel, TableView
 from ridercda.drag.estimate import Estimate
 
@@ -136,9 +137,8 @@ class DragPage(Page):
         stale = self.desk.solving.is_stale
         badges = self.desk.badges()
         words = answer(estimate, badges, baseline.id)
+        set_flag(self._sentence, "quiet", on=stale)
         self._sentence.setFont(self.theme.font(Type.SENTENCE, strong=True))
-        self._sentence.setProperty("quiet", stale)
-        self._sentence.style().polish(self._sentence)
         self._sentence.setText(words.sentence)
         self._beside.setFont(self.theme.font())
         self._beside.setText(words.beside)

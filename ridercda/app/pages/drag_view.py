@@ -40,7 +40,7 @@ def watts_per_area(session: Session, estimate: Estimate) -> float | None:
     if session.power_meter.location is MeterLocation.HUB:
         efficiency = 1.0
     with_drag, without = (
-        float(road_power(estimate.reference_speed, mass=80.0, cda=cda, crr=0.0, density=estimate.air_density, efficiency=efficiency))
+        float(road_power(estimate.reference_speed, mass=80.0, cda=cda, crr=0.0, density=estimate.air_density, efficiency=efficiency).meter)
         for cda in (1.0, 0.0)
     )
     return with_drag - without

@@ -80,7 +80,7 @@ class Page(QWidget):
         """Catch up with what was missed."""
         super().showEvent(event)
         if self._dirty:
-            self.refresh_now()
+            self._soon.start()  # not here: an exception inside a show event takes the process down
 
 
 @dataclass(frozen=True, slots=True)

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
-from PySide6.QtWidgets import QFileDialog, QHBoxLayout, QLabel, QPushButton, QVBoxLayout
+from PySide6.QtWidgets import QFileDialog, QHBoxLayout, QLabel, QVBoxLayout
 
 from ridercda.app.desk import Desk
 from ridercda.app.figures import clock, duration
@@ -17,6 +17,7 @@ from ridercda.app.run_edits import RunEdits
 from ridercda.app.shelf import Shelved, ShelfItem
 from ridercda.app.theme import Type
 from ridercda.app.widgets.card import Card, ChartCard
+from ridercda.app.widgets.links import link, link_line
 from ridercda.app.widgets.table import Column, TableModel, TableView
 from ridercda.session import edits
 
@@ -46,21 +47,17 @@ class RidesPage(Page):
         self._table.keys_picked.connect(lambda keys: desk.selection.pick_ride(keys[-1]) if keys else None)
         self._rides = Card(self.theme, self.tr("Rides of the day"))
         self._rides.body.addWidget(self._table)
-        add = QPushButton(self.tr("Add ride files…"))
+        add = link(self.tr("Add ride files…"))
         add.clicked.connect(lambda: self.asked.emit("ride.add", None))
-        self._columns_button = QPushButton(self.tr("Columns…"))
+        self._columns_button = link(self.tr("Columns…"))
         self._columns_button.setToolTip(self.tr("Say which column of a text file is which channel"))
         self._columns_button.clicked.connect(lambda: self.asked.emit("ride.columns", desk.selection.ride))
-        self._find = QPushButton(self.tr("Find the file…"))
+        self._find = link(self.tr("Find the file…"))
         self._find.clicked.connect(self._on_find_clicked)
-        self._remove = QPushButton(self.tr("Remove ride"))
+        self._remove = link(self.tr("Remove ride"))
         self._remove.clicked.connect(self._on_remove_clicked)
         self._buttons = (add, self._columns_button, self._find, self._remove)
-        line = QHBoxLayout()
-        for button in self._buttons:
-            line.addWidget(button)
-        line.addStretch(1)
-        self._rides.body.addLayout(line)
+        self._rides.body.addLayout(link_line(self.theme, *self._buttons))
         self._message = QLabel()
         self._message.setWordWrap(True)
         self._message.setProperty("bad", True)
@@ -88,8 +85,8 @@ class RidesPage(Page):
             Column(self.tr("Every"), lambda r: "–" if r.every is None else f"{r.every:g}\u00a0s", raw=lambda r: r.every),
             Column(self.tr("Faults"), lambda r: str(r.faults), raw=lambda r: float(r.faults)),
             Column(self.tr("State"), lambda r: r.state),
-            Column(self.tr("Channels"), lambda r: r.channels, tip=lambda r: r.channels),
             Column(self.tr("File"), lambda r: Path(r.file).name, tip=lambda r: r.file),
+            Column(self.tr("Channels"), lambda r: r.channels, tip=lambda r: r.channels),
         )
 
     def blank(self) -> Blank | None:

@@ -18,6 +18,7 @@ from ridercda.app.side.run_facts import wind_text
 from ridercda.app.strip.picture import axis_of
 from ridercda.app.theme import Type
 from ridercda.app.widgets.card import Card
+from ridercda.app.widgets.links import link, link_line
 from ridercda.app.widgets.table import Column, TableModel, TableView
 from ridercda.drag.estimate import RunEstimate
 from ridercda.session.document import Run
@@ -59,20 +60,16 @@ class RunsPage(Page):
         line.addWidget(self._accept)
         self._card.body.addWidget(self._offer)
         self._card.body.addWidget(self._table, 1)
-        self._leave_out = QPushButton(self.tr("Leave out"))
+        self._leave_out = link(self.tr("Leave out"))
         self._leave_out.setMenu(reason_menu(self, lambda reason: runs.exclude(desk.selection.runs, reason)))
-        self._count = QPushButton(self.tr("Count again"))
+        self._count = link(self.tr("Count again"))
         self._count.clicked.connect(lambda: runs.include(desk.selection.runs))
-        self._merge = QPushButton(self.tr("Merge"))
+        self._merge = link(self.tr("Merge"))
         self._merge.clicked.connect(lambda: runs.merge(desk.selection.runs))
-        self._remove = QPushButton(self.tr("Remove"))
+        self._remove = link(self.tr("Remove"))
         self._remove.clicked.connect(lambda: runs.remove(desk.selection.runs))
         self._buttons = (self._leave_out, self._count, self._merge, self._remove)
-        line = QHBoxLayout()
-        for button in self._buttons:
-            line.addWidget(button)
-        line.addStretch(1)
-        self._card.body.addLayout(line)
+        self._card.body.addLayout(link_line(self.theme, *self._buttons))
         self._overlay = LapOverlay(desk)
         layout = QVBoxLayout(self.content)
         layout.setContentsMargins(0, 0, 0, 0)
@@ -86,7 +83,7 @@ class RunsPage(Page):
 
         def figure(kind: Kind, name: str, digits: int | None = None) -> Column[RunRow]:
             titles = {
-                "power": self.tr("Power"), "speed": self.tr("Speed"), "air_density": self.tr("Air density"),
+                "power": self.tr("Power"), "speed": self.tr("Speed"), "air_density": self.tr("Air"),
             }  # fmt: skip
             return Column(
                 f"{titles[name]} [{units.symbol(kind)}]",

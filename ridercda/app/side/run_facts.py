@@ -6,7 +6,7 @@ import math
 from dataclasses import replace
 
 from PySide6.QtCore import QCoreApplication, Qt, Signal
-from PySide6.QtWidgets import QHBoxLayout, QLabel, QPushButton, QWidget
+from PySide6.QtWidgets import QHBoxLayout, QLabel, QWidget
 
 from ridercda.app.desk import Desk
 from ridercda.app.figures import plus_minus, value_text
@@ -17,6 +17,7 @@ from ridercda.app.side.quantity_rows import Figure, FigureRows
 from ridercda.app.widgets.card import chip_pixmap
 from ridercda.app.widgets.field import Assumed, TextField
 from ridercda.app.widgets.form import Form
+from ridercda.app.widgets.links import link, link_line
 from ridercda.drag.estimate import RunEstimate
 from ridercda.session import edits
 from ridercda.session.document import Run, Session
@@ -45,7 +46,7 @@ class RunFacts(Form):
         for key, words in (
             ("laps", self.tr("Laps")), ("power", self.tr("Power")), ("speed", self.tr("Speed")),
             ("air", self.tr("Air density")), ("wind", self.tr("Wind at the rider")), ("cda", self.tr("CdA of this run")),
-            ("repeats", self.tr("Against its repeats")),
+            ("repeats", self.tr("Against repeats")),
         ):  # fmt: skip
             label = QLabel()
             label.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignTop)
@@ -60,14 +61,9 @@ class RunFacts(Form):
         self._note = TextField(self.theme)
         self._note.committed.connect(self._on_note_committed)
         self.row(self.tr("Note"), self._note)
-        buttons = QWidget()
-        row = QHBoxLayout(buttons)
-        row.setContentsMargins(0, 0, 0, 0)
-        self._leave_out = QPushButton(self.tr("Leave out…"))
+        self._leave_out = link(self.tr("Leave out…"))
         self._leave_out.clicked.connect(self._on_leave_out_clicked)
-        row.addWidget(self._leave_out)
-        row.addStretch(1)
-        self.widget(buttons)
+        self.line(link_line(self.theme, self._leave_out))
         self.stretch()
         for signal in (desk.document.session_changed, desk.selection.changed, desk.solving.changed, desk.units.changed, desk.theme.changed):
             signal.connect(self.refresh)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import replace
 
-from PySide6.QtWidgets import QHBoxLayout, QPushButton, QWidget
+from PySide6.QtWidgets import QWidget
 
 from ridercda.app.desk import Desk
 from ridercda.app.letters import badges
@@ -14,6 +14,7 @@ from ridercda.app.side.day_form import TyresForm
 from ridercda.app.side.quantity_rows import Figure, FigureRows
 from ridercda.app.widgets.field import TextField
 from ridercda.app.widgets.form import Form
+from ridercda.app.widgets.links import link, link_line
 from ridercda.session import edits
 from ridercda.session.document import Session, Setup
 from ridercda.units import Kind
@@ -44,17 +45,11 @@ class SetupForm(Form):
                 Figure(words, kind, "Setup", name, lambda s, n=name: self._get(s, n),
                        lambda s, value, n=name: self._put(s, n, value), default_key=key)  # fmt: skip
             )
-        buttons = QWidget()
-        line = QHBoxLayout(buttons)
-        line.setContentsMargins(0, 0, 0, 0)
-        self._baseline = QPushButton(self.tr("Make baseline"))
+        self._baseline = link(self.tr("Make baseline"))
         self._baseline.clicked.connect(self._on_baseline_clicked)
-        self._remove = QPushButton(self.tr("Remove setup"))
+        self._remove = link(self.tr("Remove setup"))
         self._remove.clicked.connect(self._on_remove_clicked)
-        line.addWidget(self._baseline)
-        line.addWidget(self._remove)
-        line.addStretch(1)
-        self.widget(buttons)
+        self.line(link_line(self.theme, self._baseline, self._remove))
         self.widget(TyresForm(desk))
         self.stretch()
         desk.document.session_changed.connect(self.refresh)

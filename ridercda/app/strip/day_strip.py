@@ -101,7 +101,13 @@ class DayStrip(QWidget):
 
     def _bands(self) -> painting.Bands:
         zoomed = self._high - self._low < 0.999 * self._picture.axis.length
-        return painting.Bands.within(self.theme, QRectF(self.rect()), wind=self._picture.has_wind, zoomed=zoomed)
+        names = tuple(name for name, _ in self._lane_names())
+        wind = self._picture.has_wind
+        return painting.Bands.within(self.theme, QRectF(self.rect()), names, wind=wind, zoomed=zoomed)
+
+    def _lane_names(self) -> tuple[tuple[str, str], ...]:
+        wind = self.tr("Wind {}").format(self._desk.units.symbol(Kind.WIND_SPEED))
+        return (self.tr("Power"), "power"), (self.tr("Speed"), "speed"), (wind, "quiet")
 
     def sizeHint(self) -> QSize:
         """Ask for letters, traces, ticks and clock."""
@@ -229,14 +235,11 @@ class DayStrip(QWidget):
         return pixmap
 
     def _draw_lane_names(self, painter: QPainter, bands: painting.Bands) -> None:
-        px = self.theme.px
-        x = bands.gutter - px(10)
-        traces = bands.traces
-        drawing.label(painter, self.theme, x, traces.top() + px(12), self.tr("Power"), drawing.RIGHT, role="power")
-        drawing.label(painter, self.theme, x, traces.top() + px(28), self.tr("Speed"), drawing.RIGHT, role="speed")
-        if bands.wind.height():
-            words = self.tr("Wind {}").format(self._desk.units.symbol(Kind.WIND_SPEED))
-            drawing.label(painter, self.theme, x, bands.wind.center().y(), words, drawing.RIGHT)
+        x = bands.gutter - self.theme.px(10)
+        rects = (*painting.lanes(bands.traces), bands.wind)
+        for (name, role), rect in zip(self._lane_names(), rects, strict=True):
+            if rect.height():
+                drawing.label(painter, self.theme, x, rect.center().y(), name, drawing.RIGHT, role=role)
 
     def _draw_empty(self, painter: QPainter) -> None:
         if self._desk.shelf.reading:

@@ -34,10 +34,10 @@ class Bands:
     gutter: float  # left of it stand the names of the lanes
 
     @classmethod
-    def within(cls, theme: Theme, area: QRectF, *, wind: bool, zoomed: bool) -> Bands:
+    def within(cls, theme: Theme, area: QRectF, names: tuple[str, ...], *, wind: bool, zoomed: bool) -> Bands:
         """Return the parts for an area."""
         px = theme.px
-        gutter = area.left() + px(56)
+        gutter = area.left() + px(12) + round(max(drawing.width_of(theme.font(Type.AXIS), name) for name in names) + px(10))
         left, width = gutter, area.right() - px(10) - gutter
         foot = area.bottom() - px(4)
         map_height = px(8) if zoomed else 0
@@ -70,15 +70,24 @@ def binned(along: FloatArray, values: FloatArray, view: StripView) -> tuple[Floa
 
 
 def draw_traces(painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, rect: QRectF) -> None:
-    """Draw power and speed, each over its own range."""
-    for name, width in (("speed", 1.0), ("power", 1.2)):
+    """Draw power above and speed below, each over its own range."""
+    for name, width in (("speed", 1.1), ("power", 1.2)):
         tops = [_top(getattr(trace, name)) for trace in picture.traces if getattr(trace, name) is not None]
         if not tops:
             continue
-        top = max(tops) * (1.06 if name == "power" else 1.25)
-        painter.setPen(QPen(theme.colour(name, 0.9 if name == "power" else 0.75), theme.px(width)))
+        lane = lanes(rect)[0 if name == "power" else 1]
+        painter.setPen(QPen(theme.colour(name), theme.px(width)))
         for trace in picture.traces:
-            _draw_trace(painter, trace, name, top, view, rect)
+            _draw_trace(painter, trace, name, max(tops) * 1.05, view, lane)
+
+
+def lanes(rect: QRectF) -> tuple[QRectF, QRectF]:
+    """Return where power and speed are drawn."""
+    split = rect.top() + 0.56 * rect.height()
+    return (
+        QRectF(rect.left(), rect.top(), rect.width(), split - rect.top()),
+        QRectF(rect.left(), split + 2, rect.width(), rect.bottom() - split - 2),
+    )
 
 
 def _top(values: FloatArray) -> float:

@@ -13,7 +13,7 @@ from PySide6.QtWidgets import (
     QLabel,
     QMenu,
     QSizePolicy,
-    QStackedLayout,
+    QStackedWidget,
     QToolButton,
     QVBoxLayout,
     QWidget,
@@ -78,10 +78,10 @@ class ChartCard(Card):
         chart.setAccessibleName(title)
         self._model: TableModel[tuple[str, ...]] = TableModel(())
         self._table = TableView(theme, self._model)
-        self._stack = QStackedLayout()
+        self._stack = QStackedWidget()
         self._stack.addWidget(chart)
         self._stack.addWidget(self._table)
-        self.body.addLayout(self._stack, 1)
+        self.body.addWidget(self._stack, 1)
         self._button = QToolButton()
         self._button.setText("⋯")
         self._button.setToolTip(self.tr("Save, copy, or show as a table"))

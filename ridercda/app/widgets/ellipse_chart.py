@@ -14,7 +14,7 @@ from ridercda.app.quantities import plain
 from ridercda.app.theme import Theme, Type
 from ridercda.app.widgets import drawing
 from ridercda.app.widgets.chart import Chart, ChartTable, Mark
-from ridercda.app.widgets.scale import Scale, decimals_of, padded, step_for, ticks
+from ridercda.app.widgets.scale import Scale, decimals_of, padded, tick_step, ticks
 
 FloatArray = npt.NDArray[np.float64]
 
@@ -67,7 +67,7 @@ class EllipseChart(Chart):
         top, bottom = area.top() + px(22), area.bottom() - px(42)
         y_count = max(2, int((bottom - top) / px(48)))
         y_ticks = ticks(*y_range, y_count)
-        y_step = step_for(y_range[1] - y_range[0], y_count)
+        y_step = tick_step(*y_range, y_count)
         labels = [plain(tick, decimals_of(y_step)) for tick in y_ticks]
         gutter = max((drawing.width_of(theme.font(Type.AXIS), each) for each in labels), default=0)
         left, right = area.left() + gutter + px(14), area.right() - px(8)
@@ -79,7 +79,7 @@ class EllipseChart(Chart):
             painter.setPen(QPen(theme.colour("axis"), px(1)))
             painter.drawLine(QPointF(left - px(4), up(tick)), QPointF(left, up(tick)))
         x_count = max(2, int((right - left) / px(72)))
-        x_step = step_for(x_range[1] - x_range[0], x_count)
+        x_step = tick_step(*x_range, x_count)
         for tick in ticks(*x_range, x_count):
             painter.setPen(QPen(theme.colour("axis"), px(1)))
             painter.drawLine(QPointF(along(tick), bottom), QPointF(along(tick), bottom + px(4)))

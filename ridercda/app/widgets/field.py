@@ -10,6 +10,7 @@ from PySide6.QtWidgets import QLabel, QLineEdit, QSizePolicy, QVBoxLayout, QWidg
 
 from ridercda.app.quantities import UnitChoice
 from ridercda.app.theme import Theme, Type
+from ridercda.app.widgets.flags import set_flag
 from ridercda.errors import QuantityError
 from ridercda.session.bounds import Bound
 from ridercda.units import Kind, format_duration, parse_duration, parse_quantity
@@ -116,11 +117,9 @@ class QuantityField(QWidget):
             self._words.setToolTip(self._assumed.source)
         else:
             self._words.setToolTip("")
-        for widget, name, on in ((self.line, "wrong", wrong), (self._words, "bad", wrong), (self._words, "quiet", not wrong)):
-            if widget.property(name) != on:
-                widget.setProperty(name, on)
-                widget.style().unpolish(widget)
-                widget.style().polish(widget)
+        set_flag(self.line, "wrong", on=wrong)
+        set_flag(self._words, "bad", on=wrong)
+        set_flag(self._words, "quiet", on=not wrong)
         self._words.setText(words)
         self._words.setVisible(bool(words))
         self.line.setAccessibleDescription(words)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QComboBox, QGridLayout, QLabel, QSizePolicy, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QComboBox, QGridLayout, QLabel, QLayout, QSizePolicy, QVBoxLayout, QWidget
 
 from ridercda.app.theme import Theme, Type
 
@@ -72,6 +72,11 @@ class Form(QWidget):
         self._outer.addWidget(widget)
         self._grid = None
         return widget
+
+    def line(self, layout: QLayout) -> None:
+        """Add a line of anything across."""
+        self._outer.addLayout(layout)
+        self._grid = None
 
     def stretch(self) -> None:
         """Keep the rows at the top."""

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from PySide6.QtCore import QPointF, QRectF, QSize
+from PySide6.QtCore import QPointF, QRectF, QSize, Qt
 from PySide6.QtGui import QPainter, QPen
 
 from ridercda.app.colours import Chip
@@ -12,7 +12,7 @@ from ridercda.app.quantities import plain
 from ridercda.app.theme import Theme, Type
 from ridercda.app.widgets import drawing
 from ridercda.app.widgets.chart import Chart, ChartTable, Mark
-from ridercda.app.widgets.scale import Scale, decimals_of, padded, step_for, ticks
+from ridercda.app.widgets.scale import Scale, decimals_of, padded, tick_step, ticks
 
 
 @dataclass(frozen=True, slots=True)
@@ -104,9 +104,15 @@ class IntervalChart(Chart):
         bottom = area.bottom() - px(44)
         low, high = self._range()
         across = Scale(low, high, left, right)
+        pitch = (bottom - top) / len(picture.rows)
+        for index, row in enumerate(picture.rows):
+            if row.picked:
+                ground = QRectF(area.left(), top + pitch * index + 1, area.width(), pitch - 2)
+                painter.setPen(Qt.PenStyle.NoPen)
+                painter.setBrush(self.theme.colour("hover"))
+                painter.drawRoundedRect(ground, px(6), px(6))
         self._draw_axes(painter, across, top, bottom, area)
         marks = []
-        pitch = (bottom - top) / len(picture.rows)
         for index, row in enumerate(picture.rows):
             middle = top + pitch * (index + 0.5)
             rect = QRectF(area.left(), middle - pitch / 2, area.width(), pitch)
@@ -126,10 +132,10 @@ class IntervalChart(Chart):
     def _draw_axes(self, painter: QPainter, across: Scale, top: float, bottom: float, area: QRectF) -> None:
         picture, theme, px = self._picture, self.theme, self.theme.px
         count = max(2, int((across.last - across.first) / px(110)))
-        step = step_for(across.high - across.low, count)
+        step = tick_step(across.low, across.high, count)
         if picture.worthwhile:
             ends = (across(max(-picture.worthwhile, across.low)), across(min(picture.worthwhile, across.high)))
-            painter.fillRect(QRectF(ends[0], top, ends[1] - ends[0], bottom - top), theme.colour("hover"))
+            painter.fillRect(QRectF(ends[0], top, ends[1] - ends[0], bottom - top), theme.colour("hairline", 0.35))
         for tick in ticks(across.low, across.high, count):
             x = across(tick)
             zero = abs(tick) < step / 1e6
@@ -141,7 +147,7 @@ class IntervalChart(Chart):
         if picture.second:
             second = picture.second
             low, high = sorted((across.low * second.factor, across.high * second.factor))
-            step2 = step_for(high - low, count)
+            step2 = tick_step(low, high, count)
             painter.setPen(QPen(theme.colour("axis"), px(1)))
             for tick in ticks(low, high, count):
                 x = across(tick / second.factor)
@@ -154,12 +160,6 @@ class IntervalChart(Chart):
     def _draw_row(self, painter: QPainter, row: IntervalRow, across: Scale, middle: float, pitch: float,
                   area: QRectF, left: float, right: float, column_width: float) -> None:  # fmt: skip
         theme, px = self.theme, self.theme.px
-        if row.picked:
-            painter.fillRect(
-                QRectF(area.left(), middle - pitch / 2 + 1, area.width(), pitch - 2), theme.colour("hover")
-            )
-            painter.setPen(QPen(theme.colour("axis"), px(1.5)))
-            painter.drawLine(QPointF(across(0.0), middle - pitch / 2), QPointF(across(0.0), middle + pitch / 2))
         side = min(px(22), pitch * 0.8)
         lift = px(5) if pitch > px(36) and row.singles else 0
         line = middle - lift

@@ -13,7 +13,7 @@ from ridercda.app.quantities import plain
 from ridercda.app.theme import Theme, Type
 from ridercda.app.widgets import drawing
 from ridercda.app.widgets.chart import Chart, ChartTable, Mark
-from ridercda.app.widgets.scale import Scale, decimals_of, padded, step_for, ticks
+from ridercda.app.widgets.scale import Scale, decimals_of, padded, tick_step, ticks
 
 FloatArray = npt.NDArray[np.float64]
 
@@ -86,7 +86,7 @@ class LineChart(Chart):
         (x_low, x_high), (low, high) = self._ranges()
         top, bottom = area.top() + px(22), area.bottom() - px(40)
         count = max(2, int((bottom - top) / px(40)))
-        step = step_for(high - low, count)
+        step = tick_step(low, high, count)
         y_ticks = ticks(low, high, count)
         names = [plain(tick, decimals_of(step)) for tick in y_ticks]
         axis_font = theme.font(Type.AXIS)
@@ -102,7 +102,7 @@ class LineChart(Chart):
             painter.drawLine(QPointF(left, up(tick)), QPointF(right, up(tick)))
             drawing.label(painter, theme, left - px(8), up(tick), name, drawing.RIGHT)
         x_count = max(2, int((right - left) / px(84)))
-        x_step = step_for(x_high - x_low, x_count)
+        x_step = tick_step(x_low, x_high, x_count)
         for tick in ticks(x_low, x_high, x_count):
             painter.setPen(QPen(theme.colour("axis"), px(1)))
             painter.drawLine(QPointF(along(tick), bottom), QPointF(along(tick), bottom + px(4)))

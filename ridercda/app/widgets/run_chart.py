@@ -13,7 +13,7 @@ from ridercda.app.quantities import plain
 from ridercda.app.theme import Theme, Type
 from ridercda.app.widgets import drawing
 from ridercda.app.widgets.chart import Chart, ChartTable, Mark
-from ridercda.app.widgets.scale import Scale, decimals_of, padded, step_for, ticks, time_step
+from ridercda.app.widgets.scale import Scale, decimals_of, padded, tick_step, ticks, time_step
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,8 +76,8 @@ class RunChart(Chart):
         ends = [end for dot in self._dots for end in dot.interval]
         low, high = padded(min(ends), max(ends), 0.06)
         top, bottom = area.top() + px(22), area.bottom() - px(26)
-        count = max(2, int((bottom - top) / px(44)))
-        step = step_for(high - low, count)
+        count = max(2, int((bottom - top) / px(32)))
+        step = tick_step(low, high, count)
         labels = [plain(tick, decimals_of(step)) for tick in ticks(low, high, count)]
         gutter = max((drawing.width_of(theme.font(Type.AXIS), each) for each in labels), default=0)
         left, right = area.left() + gutter + px(14), area.right() - px(8)

@@ -40,9 +40,20 @@ def step_for(span: float, count: int) -> float:
 
 def ticks(low: float, high: float, count: int = 5) -> tuple[float, ...]:
     """Return round values within [low, high], at most about `count` + 1 of them."""
+    step = tick_step(low, high, count)
+    return tuple(i * step for i in _multiples(low, high, step))
+
+
+def tick_step(low: float, high: float, count: int = 5) -> float:
+    """Return the step of `ticks`: about `count` parts, but always so that two ticks or more are seen."""
     step = step_for(high - low, count)
-    first, last = math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9)
-    return tuple(i * step for i in range(first, last + 1))
+    while len(_multiples(low, high, step)) < 2:
+        step = step_for(step * 0.99, 2)
+    return step
+
+
+def _multiples(low: float, high: float, step: float) -> range:
+    return range(math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9) + 1)
 
 
 def decimals_of(step: float) -> int:

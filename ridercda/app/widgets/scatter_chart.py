@@ -12,7 +12,7 @@ from ridercda.app.quantities import plain
 from ridercda.app.theme import Theme, Type
 from ridercda.app.widgets import drawing
 from ridercda.app.widgets.chart import Chart, ChartTable, Mark
-from ridercda.app.widgets.scale import Scale, decimals_of, padded, step_for, ticks
+from ridercda.app.widgets.scale import Scale, decimals_of, padded, tick_step, ticks
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,7 +62,7 @@ class ScatterChart(Chart):
         x_low, x_high = padded(min(p.x for p in self._points), max(p.x for p in self._points))
         top, bottom = area.top() + px(22), area.bottom() - px(42)
         count = max(2, int((bottom - top) / px(44)))
-        step = step_for(high - low, count)
+        step = tick_step(low, high, count)
         y_ticks = ticks(low, high, count)
         names = [plain(tick, decimals_of(step), signed=True) if abs(tick) > step / 1e6 else "0" for tick in y_ticks]
         gutter = max((drawing.width_of(theme.font(Type.AXIS), name) for name in names), default=0)
@@ -73,7 +73,7 @@ class ScatterChart(Chart):
             painter.drawLine(QPointF(left, up(tick)), QPointF(right, up(tick)))
             drawing.label(painter, theme, left - px(8), up(tick), name, drawing.RIGHT)
         x_count = max(2, int((right - left) / px(72)))
-        x_step = step_for(x_high - x_low, x_count)
+        x_step = tick_step(x_low, x_high, x_count)
         for tick in ticks(x_low, x_high, x_count):
             painter.setPen(QPen(theme.colour("axis"), px(1)))
             painter.drawLine(QPointF(along(tick), bottom), QPointF(along(tick), bottom + px(4)))

@@ -218,7 +218,7 @@ class _Cells(QStyledItemDelegate):
         """Make room for the chip."""
         size = super().sizeHint(option, index)
         wider = self._theme.px(26) if isinstance(index.data(CHIP_ROLE), Badge) else 0
-        return QSize(size.width() + wider + self._theme.px(8), size.height())
+        return QSize(size.width() + wider + self._theme.px(2), size.height())
 
 
 class TableView(QTableView):
@@ -248,17 +248,24 @@ class TableView(QTableView):
         self.verticalHeader().hide()
         header = self.horizontalHeader()
         header.setHighlightSections(False)
-        header.setStretchLastSection(True)
-        header.setSectionResizeMode(QHeaderView.ResizeMode.ResizeToContents)
         header.setMinimumSectionSize(theme.px(36))
         self.setItemDelegate(_Cells(theme, self))
         self._quiet_selection = False
         self._kept: tuple[Hashable, ...] = ()
         self.selectionModel().selectionChanged.connect(self._on_selection_changed)
         self.entered.connect(lambda index: self.row_entered.emit(index.data(KEY_ROLE)))
-        self._proxy.modelReset.connect(lambda: self.show_keys(self._kept))
+        self._proxy.modelReset.connect(self._on_model_reset)
         theme.changed.connect(self._on_theme_changed)
         self._on_theme_changed()
+        self._on_model_reset()
+
+    def _on_model_reset(self) -> None:
+        header = self.horizontalHeader()
+        last = self._proxy.columnCount() - 1
+        for column in range(last + 1):
+            mode = QHeaderView.ResizeMode.Stretch if column == last else QHeaderView.ResizeMode.ResizeToContents
+            header.setSectionResizeMode(column, mode)
+        self.show_keys(self._kept)
 
     def _on_theme_changed(self) -> None:
         self.setFont(self._theme.font())
