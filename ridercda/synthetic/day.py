@@ -85,6 +85,7 @@ def simulate_day(spec: DaySpec, seed: int) -> SyntheticDay:
     streams = [np.random.default_rng(s) for s in np.random.SeedSequence(seed).spawn(6)]
     of_venue, of_wind, of_rider, of_sensors, of_paper, of_shelter = streams
     setups = _setups_in_order(spec)
+    spec = _with_drawn_efficiency(spec, of_sensors)
     venue = spec.venue
     if isinstance(venue, RoadVenue):
         venue = replace(venue, stretch=venue.stretch, runs=max(venue.runs, len(setups) * spec.laps))
@@ -139,6 +140,14 @@ def simulate_day(spec: DaySpec, seed: int) -> SyntheticDay:
         report=report if spec.wind.report else None,
     )
     return SyntheticDay(session, MappingProxyType({RIDE: ride}), truth)
+
+
+def _with_drawn_efficiency(spec: DaySpec, rng: np.random.Generator) -> DaySpec:
+    power = spec.sensors.power
+    if power.efficiency_sd == 0:
+        return spec
+    drawn = replace(power, efficiency=power.efficiency + power.efficiency_sd * rng.standard_normal())
+    return replace(spec, sensors=replace(spec.sensors, power=drawn))
 
 
 def _setups_in_order(spec: DaySpec) -> tuple[SetupSpec, ...]:

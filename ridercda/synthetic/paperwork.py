@@ -103,7 +103,7 @@ def session_document(
             )
             for k, s in enumerate(spec.setups)
         ),
-        tyres=tuple(Tyres(t.id) for t in spec.tyres),
+        tyres=tuple(Tyres(t.id, crr=t.stated_crr, crr_sd=t.stated_crr_sd) for t in spec.tyres),
         runs=tuple(
             Run(
                 id=str(r + 1),

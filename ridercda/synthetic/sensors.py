@@ -39,8 +39,8 @@ class PowerSpec:
     averaging : PowerAveraging
     resolution : float
         0 for none. [W]
-    efficiency : float
-        True share that reaches the wheel.
+    efficiency, efficiency_sd : float
+        True share that reaches the wheel: `efficiency` plus a draw with `efficiency_sd`.
     """
 
     noise: float = 0.03
@@ -52,6 +52,7 @@ class PowerSpec:
     averaging: PowerAveraging = PowerAveraging.RECORD
     resolution: float = 0.0
     efficiency: float = 0.977
+    efficiency_sd: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)

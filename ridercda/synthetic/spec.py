@@ -60,6 +60,8 @@ class TyreSpec:
         Relative change per kelvin of air temperature. [1/K]
     warm_up, warm_up_time : float
         Relative excess in the first moment of the day, and the time in which it fades. [1, s]
+    stated_crr, stated_crr_sd : float or None
+        What the session says of it beforehand. [1]
     """
 
     id: str = "race"
@@ -67,6 +69,8 @@ class TyreSpec:
     temperature_coefficient: float = -0.01
     warm_up: float = 0.0
     warm_up_time: float = 500.0
+    stated_crr: float | None = None
+    stated_crr_sd: float | None = None
 
 
 @dataclass(frozen=True, slots=True)

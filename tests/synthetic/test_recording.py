@@ -71,6 +71,16 @@ def test_power_scale_is_drawn_only_when_asked_for() -> None:
     assert simulate_day(SHORT, 1).truth.power_scale == 0.0
 
 
+def test_efficiency_is_drawn_only_when_asked_for() -> None:
+    power = PowerSpec(noise=0.0, efficiency_sd=0.005)
+    spec = replace(SHORT, order="A", sensors=replace(exact_sensors(), power=power))
+    days = [simulate_day(spec, s) for s in range(12)]
+    assert 0.002 < np.std([d.truth.efficiency for d in days]) < 0.01
+    assert simulate_day(SHORT, 1).truth.efficiency == 0.977
+    day = days[0]
+    assert day.rides["day"].channels["power"] * day.truth.efficiency == pytest.approx(day.truth.records.power)
+
+
 def test_power_lag_shifts_power_in_time(exact: Ride) -> None:
     late = with_power(lag=2.0).channels["power"]
     assert late[50:-10] == pytest.approx(exact.channels["power"][48:-12], abs=1e-6)
