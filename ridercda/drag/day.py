@@ -120,5 +120,5 @@ class Day:
     smallest_worthwhile_cda: float | None  # [m^2]
     smallest_worthwhile_power: float | None  # at the reference speed [W]
     confidence: float
-    altitude_trusted: bool  # whether the recorded altitude may stand in for the profile
+    altitude_sd: float | None  # of the recorded altitude where it is trusted to give the profile [m]
     notes: tuple[tuple[str, str], ...] = ()  # warning code and message, from preparing

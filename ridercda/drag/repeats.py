@@ -1,0 +1,169 @@
+"""From runs to setups: repeats counted as repeats.
+
+The fit gives every run its own CdA, with the covariance that gusts, noise, wind, profile and rolling leave. Here the
+working prior on repeats is taken out again and the spread between repeats is estimated and counted, together with a
+drift of CdA common to all setups. Three repeats then beat one long run, as they should.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from ridercda.drag import priors
+from ridercda.drag.layout import repeats_precision
+from ridercda.drag.likelihood import Fit
+from ridercda.drag.mixed_model import Component, MixedFit, fit_mixed
+from ridercda.session.document import RunKind
+
+FloatArray = npt.NDArray[np.float64]
+
+FLAT = 1e-3  # of the working prior's precision, left in so that a day without an answer stays finite
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class RunFigures:
+    """What the fit says of the runs without any prior on repeats, and of what they share.
+
+    Entries: CdA per run, then the shared unknowns (Crr of each tyre set that is not known exactly, power scale).
+    """
+
+    values: FloatArray  # (n,)
+    covariance: FloatArray  # (n, n)
+    runs: int
+    tyres: tuple[int, ...]  # tyre sets in the shared part
+    rows: tuple[int, ...]  # of the fit's parameter vector
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Pooled:
+    """Setups, Crr and power scale, with the spread between repeats found."""
+
+    figures: RunFigures
+    mixed: MixedFit
+    design: FloatArray  # (n, k): columns are setups present, coast-down offset if any, then the shared unknowns
+    setups: tuple[int, ...]  # setup of each of the first columns
+    shared: slice  # columns of the shared unknowns
+    drift: FloatArray  # (n, n): covariance of the common drift
+
+    @property
+    def between_run_sd(self) -> float:
+        """Spread between repeats. [m^2]"""
+        return float(np.sqrt(self.mixed.variances[0]))
+
+    def column(self, setup: int) -> int:
+        """Return the column of a setup."""
+        return self.setups.index(setup)
+
+    def contrast(self, setup: int, against: int) -> FloatArray:
+        """Return the contrast of two setups."""
+        line = np.zeros(self.design.shape[1])
+        line[self.column(setup)] = 1.0
+        line[self.column(against)] = -1.0
+        return line
+
+
+def run_figures(fit: Fit, covariance: FloatArray) -> RunFigures:
+    """Return the runs' figures under a covariance of the fit, the working prior on repeats taken out."""
+    layout = fit.model.layout
+    runs = layout.runs
+    tyres = tuple(t for t in range(layout.crr.stop - layout.crr.start) if layout.free[layout.crr.start + t])
+    rows = [*range(runs), *(layout.crr.start + t for t in tyres)]
+    if layout.free[layout.power_scale]:
+        rows.append(layout.power_scale)
+    part = covariance[np.ix_(rows, rows)]
+    scale = np.sqrt(np.diag(part))
+    precision = np.linalg.inv(part / np.outer(scale, scale)) / np.outer(scale, scale)
+    pull = precision @ fit.parameters[rows]
+    working = (1.0 - FLAT) * repeats_precision(fit.model.day)
+    precision[:runs, :runs] -= working
+    pull[:runs] -= working @ layout.mean[:runs]
+    cleaned = _inverse(precision)
+    return RunFigures(cleaned @ pull, cleaned, runs, tyres, tuple(rows))
+
+
+def pool(fit: Fit, figures: RunFigures) -> Pooled:
+    """Return the setups' figures, the spread between repeats estimated with its prior."""
+    day = fit.model.day
+    n = figures.values.size
+    runs = figures.runs
+    setups = tuple(sorted({run.setup for run in day.runs}))
+    coasting = np.array([run.kind is RunKind.COAST_DOWN for run in day.runs])
+    size = max(float(np.median(figures.values[:runs])), 0.1)
+    design = np.zeros((n, len(setups) + (n - runs)))
+    for r, run in enumerate(day.runs):
+        design[r, setups.index(run.setup)] = 1.0
+    design[runs:, len(setups) :] = np.eye(n - runs)
+    repeats = np.zeros((n, n))
+    repeats[:runs, :runs] = np.eye(runs)
+    hour = np.array([run.hour for run in day.runs])
+    hour = hour - hour.mean()
+    drift = np.zeros((n, n))
+    drift[:runs, :runs] = (priors.CDA_DRIFT_SD * size) ** 2 * np.outer(hour, hour)
+    offset = np.zeros((n, n))
+    offset[:runs, :runs] = (priors.COAST_DOWN_OFFSET_SD * size) ** 2 * np.outer(coasting, coasting)
+    median, spread = priors.BETWEEN_RUN
+    mixed = fit_mixed(
+        figures.values,
+        design,
+        figures.covariance + drift + offset,
+        [Component(repeats, (median * size, spread))],
+    )
+    return Pooled(figures, mixed, design, setups, slice(len(setups), design.shape[1]), drift)
+
+
+def run_alone(pooled: Pooled, run: int) -> tuple[float, float]:
+    """Return one run's own CdA and standard error, given what all runs say of the shared unknowns."""
+    f = pooled.figures
+    shared = slice(f.runs, f.values.size)
+    block = f.covariance[shared, shared]
+    gain = np.linalg.solve(block, f.covariance[shared, run]) if block.size else np.zeros(0)
+    found = pooled.mixed.coefficients[pooled.shared]
+    value = f.values[run] + gain @ (found - f.values[shared])
+    own = f.covariance[run, run] - gain @ f.covariance[shared, run]
+    known = gain @ pooled.mixed.covariance[pooled.shared, pooled.shared] @ gain
+    return float(value), float(np.sqrt(max(own + known, 0.0)))
+
+
+def residuals(pooled: Pooled) -> FloatArray:
+    """Return each run minus the mean of its setup, in standard errors of that difference, (runs,)."""
+    f = pooled.figures
+    n = f.values.size
+    structure = np.zeros((n, n))
+    structure[: f.runs, : f.runs] = np.eye(f.runs)
+    total = f.covariance + pooled.drift + pooled.mixed.variances[0] * structure
+    rest = f.values - pooled.design @ pooled.mixed.coefficients
+    spread = total - pooled.design @ pooled.mixed.covariance @ pooled.design.T
+    own = np.sqrt(np.maximum(np.diag(spread)[: f.runs], 1e-30))
+    return np.asarray(rest[: f.runs] / own)
+
+
+def without_run(pooled: Pooled, run: int) -> FloatArray | None:
+    """Return the coefficients with one run left out at the same spread; None if its setup then has none."""
+    f = pooled.figures
+    keep = np.arange(f.values.size) != run
+    design = pooled.design[keep]
+    if np.linalg.matrix_rank(design) < design.shape[1]:
+        return None
+    n = f.values.size
+    structure = np.zeros((n, n))
+    structure[: f.runs, : f.runs] = np.eye(f.runs)
+    total = (f.covariance + pooled.drift + pooled.mixed.variances[0] * structure)[np.ix_(keep, keep)]
+    inverse = _inverse(total)
+    return np.asarray(np.linalg.solve(design.T @ inverse @ design, design.T @ inverse @ f.values[keep]))
+
+
+def contrast_variance(pooled: Pooled, covariance: FloatArray, contrast: FloatArray) -> float:
+    """Return the variance of a contrast if the runs' covariance were another, at the same weights."""
+    weights = contrast @ pooled.mixed.weights
+    return float(weights @ covariance @ weights)
+
+
+def _inverse(matrix: FloatArray) -> FloatArray:
+    size = np.sqrt(np.abs(np.diag(matrix)))
+    outer = np.outer(size, size)
+    value, vector = np.linalg.eigh(0.5 * (matrix + matrix.T) / outer)
+    value = np.maximum(value, 1e-13 * value.max())  # the working prior taken out may leave nothing behind
+    return np.asarray((vector / value) @ vector.T / outer)
