@@ -1,11 +1,11 @@
-"""The style sheet of the toolkit's own widgets, written from the theme; fonts are set by code, never here."""
+"""The style sheet of the toolkit's own widgets, written from the theme; fonts are set by code, headers of tables aside."""
 
 from __future__ import annotations
 
 from string import Template
 
 from ridercda.app.colours import mixed
-from ridercda.app.theme import Theme
+from ridercda.app.theme import Theme, Type
 
 _SHEET = Template("""
 QMainWindow, QDialog { background: $paper; }
@@ -71,7 +71,10 @@ QTableView::item:hover, QListView::item:hover { background: $hover; }
 QTableView::item:selected, QListView::item:selected { background: $chosen; color: $ink; }
 QHeaderView { background: transparent; border: 0; }
 QHeaderView::section { background: $card; color: $quiet; border: 0; border-bottom: 1px solid $hairline;
-  padding: ${s4}px ${s9}px; }
+  padding: ${s4}px ${s9}px; font-size: ${small}px; }
+QHeaderView::up-arrow, QHeaderView::down-arrow { image: url($arrow); width: ${s8}px; height: ${s8}px;
+  subcontrol-origin: margin; subcontrol-position: bottom center; }
+QAbstractScrollArea::corner { background: transparent; border: 0; }
 QTableCornerButton::section { background: transparent; border: 0; }
 QScrollArea { background: transparent; border: 0; }
 QScrollArea > QWidget > QWidget { background: transparent; }
@@ -111,6 +114,7 @@ def stylesheet(theme: Theme, arrow: str) -> str:
         names,
         **sizes,
         arrow=arrow,
+        small=theme.font(Type.AXIS).pixelSize(),
         disabled=mixed(roles.quiet, roles.card, 0.35),
         accent_hover=mixed(roles.accent, roles.ink, 0.18),
     )

@@ -10,7 +10,7 @@ from dataclasses import dataclass
 
 from PySide6.QtCore import Qt, QTimer, Signal
 from PySide6.QtGui import QShowEvent
-from PySide6.QtWidgets import QLabel, QPushButton, QStackedLayout, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QLabel, QPushButton, QScrollArea, QStackedLayout, QVBoxLayout, QWidget
 
 from ridercda.app.desk import Desk
 from ridercda.app.run_edits import RunEdits
@@ -34,7 +34,12 @@ class Page(QWidget):
         self._empty.asked.connect(lambda action: self.asked.emit(action, None))
         self._stack = QStackedLayout(self)
         self._stack.setContentsMargins(0, 0, 0, 0)
-        self._stack.addWidget(self.content)
+        self._scroll = QScrollArea()  # where a page is higher than the window
+        self._scroll.setWidgetResizable(True)
+        self._scroll.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        self._scroll.setFocusPolicy(Qt.FocusPolicy.NoFocus)
+        self._scroll.setWidget(self.content)
+        self._stack.addWidget(self._scroll)
         self._stack.addWidget(self._empty)
         self._dirty = True
         self._soon = QTimer(self, singleShot=True, interval=0)
@@ -73,7 +78,7 @@ class Page(QWidget):
             self._empty.show_blank(blank)
             self._stack.setCurrentWidget(self._empty)
         else:
-            self._stack.setCurrentWidget(self.content)
+            self._stack.setCurrentWidget(self._scroll)
             self.refresh()
 
     def showEvent(self, event: QShowEvent) -> None:

@@ -92,8 +92,8 @@ class RunsPage(Page):
             )
 
         return (
-            Column(self.tr("Run"), lambda r: r.run.id, raw=lambda r: float(r.run.id) if r.run.id.isdigit() else r.run.id, chip=lambda r: r.badge),
-            Column(self.tr("Setup"), lambda r: r.badge.name, tip=lambda r: r.badge.name),
+            Column(self.tr("Run"), lambda r: f"{r.run.id} · {r.badge.name}", raw=lambda r: float(r.run.id) if r.run.id.isdigit() else r.run.id,
+                   chip=lambda r: r.badge, tip=lambda r: r.badge.name),
             Column(self.tr("Starts"), lambda r: clock(r.moment) if r.dated else elapsed(r.run.start), raw=lambda r: r.moment),
             Column(self.tr("Length"), lambda r: "–" if r.length is None else duration(r.length), raw=lambda r: r.length),
             Column(self.tr("Laps"), lambda r: str(r.figure.laps) if r.figure else "–", raw=lambda r: float(r.figure.laps) if r.figure else None),

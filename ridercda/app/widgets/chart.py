@@ -19,7 +19,7 @@ from PySide6.QtGui import (
     QPaintEvent,
 )
 from PySide6.QtSvg import QSvgGenerator
-from PySide6.QtWidgets import QToolTip, QWidget
+from PySide6.QtWidgets import QSizePolicy, QToolTip, QWidget
 
 from ridercda.app.theme import Theme
 from ridercda.app.widgets.drawing import focus_frame
@@ -74,6 +74,7 @@ class Chart(QWidget):
         self._keys = _Keyboard()
         self._under = ""
         self.setMouseTracking(True)
+        self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Expanding)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         theme.changed.connect(self.update)
 

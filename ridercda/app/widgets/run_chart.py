@@ -76,7 +76,7 @@ class RunChart(Chart):
         ends = [end for dot in self._dots for end in dot.interval]
         low, high = padded(min(ends), max(ends), 0.06)
         top, bottom = area.top() + px(22), area.bottom() - px(26)
-        count = max(2, int((bottom - top) / px(32)))
+        count = max(2, int((bottom - top) / px(26)))
         step = tick_step(low, high, count)
         labels = [plain(tick, decimals_of(step)) for tick in ticks(low, high, count)]
         gutter = max((drawing.width_of(theme.font(Type.AXIS), each) for each in labels), default=0)

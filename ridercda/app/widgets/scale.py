@@ -48,7 +48,7 @@ def tick_step(low: float, high: float, count: int = 5) -> float:
     """Return the step of `ticks`: about `count` parts, but always so that two ticks or more are seen."""
     step = step_for(high - low, count)
     while len(_multiples(low, high, step)) < 2:
-        step = step_for(step * 0.99, 2)
+        step = step_for(0.99 * step, 3)  # the next smaller of 1, 2, 5
     return step
 
 
