@@ -72,7 +72,9 @@ class DayRun:
     efficiency: float  # between the meter and the wheel, for positive power [1]
     rotating_mass: float  # wheel inertia over radius squared [kg]
     speed_source: int  # index into Day.speed_factor_sd: runs that share one circumference error
-    wind_from_report: tuple[float, float] | None  # components the wind comes from, east and north, 1.2 m up [m/s]
+    wind_from_report: (
+        tuple[float, float] | None
+    )  # components the wind comes from, east and north, 1.2 m up [m/s]
     wind_report_sd: float  # of each component, 1.2 m up [m/s]
     records: RunRecords
 

@@ -107,6 +107,15 @@ class NextStep:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
+class VenueProfile:
+    """The venue's profile as the runs show it, above its start. Arrays of shape (n,)."""
+
+    position: FloatArray  # [m]
+    height: FloatArray  # [m]
+    standard_error: FloatArray  # [m]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
 class Estimate:
     """The answer of a solve.
 
@@ -132,6 +141,7 @@ class Estimate:
     speed_range: tuple[float, float] | None = None  # of the counted runs [m/s]
     tested_power: tuple[float, float] | None = None  # of the counted runs [W]
     method: str = ""
+    profile: VenueProfile | None = None
 
     def __post_init__(self) -> None:
         """Make the arrays read-only."""

@@ -212,7 +212,9 @@ def run_innovations(
         power = power * gain_power + table[k, EXTRA_POWER]
         inertia = mass * q * q + rotating_mass
         weight = mass * gravity
-        softness = leading[TYRE_TEMPERATURE] * table[k, TEMPERATURE] + leading[TYRE_WARM_UP] * table[k, WARM_UP]
+        softness = (
+            leading[TYRE_TEMPERATURE] * table[k, TEMPERATURE] + leading[TYRE_WARM_UP] * table[k, WARM_UP]
+        )
         crr = crr0 * (1.0 + softness)
         sign = table[k, SIGN]
         slope = 0.0

@@ -140,6 +140,8 @@ def _wind_prior(day: Day, component: int) -> tuple[FloatArray, FloatArray]:
     reports = [run.wind_from_report for run in day.runs]
     expected = np.array([report[component] if report else 0.0 for report in reports])
     strength = np.array([np.hypot(*report) if report else 0.0 for report in reports])
-    shared = np.array([run.wind_report_sd if run.wind_from_report else priors.WIND_UNKNOWN_SD for run in day.runs])
+    shared = np.array(
+        [run.wind_report_sd if run.wind_from_report else priors.WIND_UNKNOWN_SD for run in day.runs]
+    )
     drift_sd = priors.WIND_DRIFT_SD + priors.WIND_DRIFT_SHARE * strength
     return expected, np.outer(shared, shared) + np.outer(drift_sd, drift_sd) * near + 1e-6 * np.eye(runs)

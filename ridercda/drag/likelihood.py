@@ -8,8 +8,10 @@ their own uncertainty is carried into the covariance: with it left out intervals
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
+from types import MappingProxyType
 
 import numpy as np
 import numpy.typing as npt
@@ -27,9 +29,10 @@ FloatArray = npt.NDArray[np.float64]
 
 NOISE_STEP = 0.01  # of the logarithms, for first differences
 CURVATURE_STEP = 0.08  # of the logarithms, for second differences
-NOISE_ROUNDS = 14
+NOISE_ROUNDS = 25
 NOISE_SETTLED = 0.03  # of a standard deviation of each noise parameter
 GAUSS_NEWTON_ROUNDS = 12
+STEP_HALVINGS = 8
 SETTLED = 0.01  # of a standard deviation of each unknown
 
 
@@ -69,7 +72,8 @@ class Pass:
     information: FloatArray  # (free, free): of data and prior
     gradient: FloatArray  # (free,)
     step: FloatArray  # (free,): to the optimum of the linearised model
-    log_likelihood: float  # restricted, of the linearised model
+    log_likelihood: float  # restricted, at the optimum of the linearised model
+    achieved: float  # restricted, at these very unknowns
     innovation: FloatArray  # over its standard deviation
     variance: FloatArray  # 0: no innovation here
 
@@ -86,6 +90,8 @@ class Fit:
     log_noise_covariance: FloatArray
     by_noise: FloatArray  # (p, NOISES): how the unknowns move with the logarithms of the noise
     last: Pass
+    grown: Mapping[int, FloatArray]  # noise parameter -> covariance with it raised by the share `grown_by`
+    grown_by: float = NOISE_STEP
 
     @property
     def noise(self) -> FloatArray:
@@ -188,7 +194,8 @@ def filter_pass(model: Model, parameters: FloatArray, log_noise: FloatArray) -> 
     off_noise = log_noise - model.noise_mean
     in_play = model.noise_sd > 0
     prior = float(((off_noise[in_play] / model.noise_sd[in_play]) ** 2).sum())
-    log_likelihood = -0.5 * (cost + float(gradient @ step) + log_det + log_det_information + prior)
+    achieved = -0.5 * (cost + log_det + log_det_information + prior)
+    log_likelihood = achieved - 0.5 * float(gradient @ step)
     return Pass(
         parameters,
         log_noise,
@@ -196,6 +203,7 @@ def filter_pass(model: Model, parameters: FloatArray, log_noise: FloatArray) -> 
         gradient,
         step,
         log_likelihood,
+        achieved,
         np.concatenate(kept_e),
         np.concatenate(kept_s),
     )
@@ -248,38 +256,31 @@ def fit(model: Model, watch: Watch = NO_WATCH) -> Fit:
     NotConverged
         If the unknowns or the noise do not settle.
     """
-    parameters = model.layout.mean.copy()
-    log_noise = model.noise_mean.copy()
-    in_play = np.flatnonzero(model.noise_sd > 0)
     least, most = np.log(priors.NOISE_LEAST), np.log(priors.NOISE_MOST)
+    in_play = np.flatnonzero(model.noise_sd > 0)
     with ThreadPoolExecutor(2) as pool:
-        here = settle(model, parameters, log_noise, rounds=2)
+        here = settle(
+            model, filter_pass(model, model.layout.mean.copy(), np.log(priors.NOISE_START)), rounds=6
+        )
         for round_ in range(NOISE_ROUNDS):
             watch.step(round_, NOISE_ROUNDS)
             raised = list(pool.map(lambda i: _raised(model, here, i), in_play))
             gradient, information = _noise_score(model, here, raised, in_play)
-            move = np.linalg.solve(information, gradient)
-            move = np.clip(move, -1.0, 1.0)
+            move = np.zeros(at.NOISES)
+            wanted = np.linalg.solve(information, gradient)
+            if np.abs(wanted).max() > 1.0:  # far off, where the information misleads: each by its own slope
+                wanted = np.clip(gradient / np.diag(information), -0.8, 0.8)
+            move[in_play] = wanted
+            move = np.clip(here.log_noise + move, least, most) - here.log_noise
             sd = np.sqrt(np.diag(np.linalg.inv(information)))
-            at_bound = ((here.log_noise <= least) & (_full(move, in_play) < 0)) | (
-                (here.log_noise >= most) & (_full(move, in_play) > 0)
-            )
-            if np.all((np.abs(move) < NOISE_SETTLED * sd) | at_bound[in_play]):
+            if np.all(np.abs(move[in_play]) < NOISE_SETTLED * sd):
                 break
-            trial = None
-            for _ in range(5):
-                log_noise = here.log_noise.copy()
-                log_noise[in_play] += move
-                log_noise = np.clip(log_noise, least, most)
-                trial = filter_pass(model, _moved(model, here), log_noise)
-                if trial.log_likelihood > here.log_likelihood - 0.01:
-                    break
-                move = 0.5 * move
-            assert trial is not None
-            here = trial
-    here = settle(model, here.parameters, here.log_noise, rounds=GAUSS_NEWTON_ROUNDS)
-    raised = [_raised(model, here, i) for i in in_play]
-    with ThreadPoolExecutor(2) as pool:
+            there = _stepped(model, here, move)
+            if there is None:
+                break
+            here = there
+        here = settle(model, here, rounds=GAUSS_NEWTON_ROUNDS)
+        raised = list(pool.map(lambda i: _raised(model, here, i), in_play))
         information = _noise_curvature(model, here, in_play, pool)
     noise_covariance = np.zeros((at.NOISES, at.NOISES))
     noise_covariance[np.ix_(in_play, in_play)] = np.linalg.inv(information)
@@ -289,7 +290,12 @@ def fit(model: Model, watch: Watch = NO_WATCH) -> Fit:
         by_noise[free, i] = (other.step - here.step) / NOISE_STEP
     given = np.zeros((model.layout.size, model.layout.size))
     given[np.ix_(free, free)] = _inverse(here.information)
-    covariance = given + by_noise @ noise_covariance @ by_noise.T
+    by_estimate = by_noise @ noise_covariance @ by_noise.T
+    grown = {}
+    for i, other in zip(in_play, raised, strict=True):
+        grown[int(i)] = by_estimate.copy()
+        grown[int(i)][np.ix_(free, free)] += _inverse(other.information)
+    covariance = given + by_estimate
     return Fit(
         model,
         _moved(model, here),
@@ -299,25 +305,37 @@ def fit(model: Model, watch: Watch = NO_WATCH) -> Fit:
         noise_covariance,
         by_noise,
         here,
+        MappingProxyType(grown),
     )
 
 
-def settle(model: Model, parameters: FloatArray, log_noise: FloatArray, rounds: int) -> Pass:
-    """Return a pass at the optimum for given noise, reached by Gauss-Newton within `rounds` passes."""
-    here = filter_pass(model, parameters, log_noise)
-    for _ in range(rounds - 1):
+def settle(model: Model, here: Pass, rounds: int) -> Pass:
+    """Return a pass at the optimum for the noise of `here`, reached by Gauss-Newton within `rounds` steps."""
+    for _ in range(rounds):
         spread = np.sqrt(np.diag(_inverse(here.information)))
         if np.all(np.abs(here.step) < SETTLED * spread):
             break
-        here = filter_pass(model, _moved(model, here), log_noise)
+        there = _stepped(model, here, np.zeros(at.NOISES))
+        if there is None:
+            break
+        here = there
     return here
 
 
-def _full(values: FloatArray, in_play: npt.NDArray[np.int64]) -> FloatArray:
-    """Return values of the noise parameters in play among all of them."""
-    full = np.zeros(at.NOISES)
-    full[in_play] = values
-    return full
+def _stepped(model: Model, here: Pass, move: FloatArray) -> Pass | None:
+    """Return a better pass along the step of the unknowns and a move of the noise, None if there is none.
+
+    The linearised model promises too much far from its optimum, so what counts is the likelihood reached.
+    """
+    share = 1.0
+    for _ in range(STEP_HALVINGS):
+        parameters = here.parameters.copy()
+        parameters[model.layout.free] += share * here.step
+        there = filter_pass(model, parameters, here.log_noise + share * move)
+        if there.achieved > here.achieved:
+            return there
+        share *= 0.5
+    return None
 
 
 def _moved(model: Model, here: Pass) -> FloatArray:

@@ -85,7 +85,9 @@ def fit_mixed(
     """
     base = max(float(np.var(y - design @ np.linalg.lstsq(design, y, rcond=None)[0])), 1e-300)
     start = [
-        np.log(c.prior[0] ** 2) if c.prior else np.log(base / len(components) / max(np.trace(c.structure) / y.size, 1e-12))
+        np.log(c.prior[0] ** 2)
+        if c.prior
+        else np.log(base / len(components) / max(np.trace(c.structure) / y.size, 1e-12))
         for c in components
     ]
     log_variance = np.array(start)
@@ -108,9 +110,7 @@ def fit_mixed(
     scale = np.outer(variances, variances)
     by_log = np.linalg.pinv(information)
     slopes = np.stack([pieces.weights @ c.structure @ pieces.weights.T for c in components])
-    return MixedFit(
-        pieces.coefficients, pieces.covariance, variances, by_log * scale, slopes, pieces.weights
-    )
+    return MixedFit(pieces.coefficients, pieces.covariance, variances, by_log * scale, slopes, pieces.weights)
 
 
 @dataclass(frozen=True, slots=True, eq=False)

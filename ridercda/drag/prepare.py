@@ -54,7 +54,9 @@ def prepare_day(session: Session, rides: Mapping[str, Ride], watch: Watch = NO_W
     notes = [("position", note) for note in path.notes]
     mass = _all_up_mass(session)
     kind = session.venue.kind if session.venue else VenueKind.ROAD
-    tyres = tuple(dict.fromkeys(s.tyres for s in session.setups if any(r.setup == s.id for r in session.runs)))
+    tyres = tuple(
+        dict.fromkeys(s.tyres for s in session.setups if any(r.setup == s.id for r in session.runs))
+    )
     ids = tuple(setup.id for setup in session.setups)
     baseline = session.baseline
     g = _gravity(rides)
@@ -65,7 +67,12 @@ def prepare_day(session: Session, rides: Mapping[str, Ride], watch: Watch = NO_W
     if meter.sides in (MeterSides.LEFT, MeterSides.RIGHT) or any(
         fault.kind is FaultKind.ONE_SIDED_POWER for ride in rides.values() for fault in ride.faults
     ):
-        notes.append(("one-sided-power", "Power is measured on one side and doubled; the balance of the legs may change with effort and position, which no interval here covers."))  # noqa: E501
+        notes.append(
+            (
+                "one-sided-power",
+                "Power is measured on one side and doubled; the balance of the legs may change with effort and position, which no interval here covers.",
+            )
+        )
 
     sources: dict[tuple[str, str], int] = {}
     factor_sd: list[float] = []
@@ -87,7 +94,12 @@ def prepare_day(session: Session, rides: Mapping[str, Ride], watch: Watch = NO_W
             sources[group] = len(factor_sd)
             factor_sd.append(max(scale.standard_error, 1e-5))
             if abs(scale.factor - 1.0) > 0.004 and scale.basis:
-                notes.append(("circumference", f"Ride {run.ride}: the wheel reads {100 * (1 / scale.factor - 1):+.1f} % in distance against the {scale.basis}; corrected."))  # noqa: E501
+                notes.append(
+                    (
+                        "circumference",
+                        f"Ride {run.ride}: the wheel reads {100 * (1 / scale.factor - 1):+.1f} % in distance against the {scale.basis}; corrected.",
+                    )
+                )
         air = air_of_run(session, run, ride, clock.get(run.ride))
         lap = path.length if path.closed else None
         records = _records(run, ride, placed, scale.factor, air, session, setup, mass, g, lap)
@@ -99,7 +111,11 @@ def prepare_day(session: Session, rides: Mapping[str, Ride], watch: Watch = NO_W
             )
             continue
         circumference = session.bike.wheel_circumference or default("bike.wheel_circumference")
-        inertia = default("bike.wheel_inertia") if session.bike.wheel_inertia is None else session.bike.wheel_inertia
+        inertia = (
+            default("bike.wheel_inertia")
+            if session.bike.wheel_inertia is None
+            else session.bike.wheel_inertia
+        )
         runs.append(
             DayRun(
                 id=run.id,
@@ -125,9 +141,19 @@ def prepare_day(session: Session, rides: Mapping[str, Ride], watch: Watch = NO_W
         middle = runs[0].hour
         runs = [_later(run, middle) for run in runs]
         if kind is not VenueKind.TRACK and not path.has_heading:
-            notes.append(("wind-not-modelled", "No positions were recorded, so headings are unknown: a steady wind is not modelled and makes absolute CdA or Crr come out high."))  # noqa: E501
+            notes.append(
+                (
+                    "wind-not-modelled",
+                    "No positions were recorded, so headings are unknown: a steady wind is not modelled and makes absolute CdA or Crr come out high.",
+                )
+            )
         elif kind is not VenueKind.TRACK and all(run.wind_from_report is None for run in runs):
-            notes.append(("wind-unknown", "No wind is reported; it is found from the rides alone. A report, even a rough one, tightens absolute values."))  # noqa: E501
+            notes.append(
+                (
+                    "wind-unknown",
+                    "No wind is reported; it is found from the rides alone. A report, even a rough one, tightens absolute values.",
+                )
+            )
     reference = session.reference_speed
     if reference is None:
         speeds = [float(run.records.speed[run.records.usable].mean()) for run in runs]
@@ -270,7 +296,7 @@ def _speed_at_ends(speed: FloatArray) -> FloatArray:
 def _all_up_mass(session: Session) -> float:
     for key, value in (("rider.mass", session.rider.mass), ("bike.mass", session.bike.mass)):
         if value is None:
-            raise SessionError("is needed to solve: add for example mass = \"75.5 kg\"", key=key)
+            raise SessionError('is needed to solve: add for example mass = "75.5 kg"', key=key)
     total = (session.rider.mass or 0.0) + (session.bike.mass or 0.0)
     if not LIGHTEST <= total <= HEAVIEST:
         raise SessionError(
@@ -347,7 +373,9 @@ def _tyres(session: Session, name: str) -> DayTyres:
         id=name,
         crr=known.crr if known else None,
         crr_sd=(known.crr_sd or 0.0) if known and known.crr is not None else None,
-        temperature_coefficient=default("tyres.temperature_coefficient") if coefficient is None else coefficient,
+        temperature_coefficient=default("tyres.temperature_coefficient")
+        if coefficient is None
+        else coefficient,
         temperature_coefficient_sd=default("tyres.temperature_coefficient_sd")
         if coefficient_sd is None
         else coefficient_sd,

@@ -34,8 +34,8 @@ DRAGGED_AIR_SD: Final = 0.15  # [m/s] air carried round an indoor track
 DRAGGED_AIR_DRIFT_SD: Final = 0.03  # [m/s] between runs
 
 SLOPE_SD: Final = 0.10  # of the road's slope
-SLOPE_STEP_SD: Final = 0.03  # between nodes 60 m apart; grows with the square root of the distance
-NODE_SPACING: Final = 60.0  # [m]
+SLOPE_STEP_SD: Final = 0.025  # between knots 40 m apart; grows with the square root of the distance
+NODE_SPACING: Final = 40.0  # [m]
 MOST_NODES: Final = 160
 ALTITUDE_SD: Final = 2.0  # [m] of a head unit's altitude profile after averaging, per node
 ALTITUDE_DRIFT: Final = 3.0  # [m] slow error of that profile along the venue
@@ -49,7 +49,14 @@ AIR_SPEED_NOISE: Final = (0.3, 0.8)  # [m/s]
 # Bounds of the noise, in the order gust sd, gust time, power, speed, air speed. Below them no instrument works, and
 # what the model leaves out (a profile between its knots, positions half a metre off) would pass for information.
 NOISE_LEAST: Final = (0.02, 2.0, 0.008, 0.004, 0.02)
-NOISE_MOST: Final = (5.0, 90.0, 0.4, 0.5, 3.0)
+NOISE_START: Final = (
+    0.15,
+    8.0,
+    0.015,
+    0.012,
+    0.1,
+)  # from below: a search from above may settle on gusts of hours
+NOISE_MOST: Final = (5.0, 45.0, 0.4, 0.5, 3.0)
 
 # Spread of CdA between repeats of one setup. Median from the 0.66 % reproducibility of CdA in 30 coast-downs:
 # R. Candau et al., Med. Sci. Sports Exerc. 31 (1999) 1441, doi:10.1097/00005768-199910000-00013 (abstract).

@@ -43,9 +43,9 @@ class VenueNodes:
             scaled = np.clip(scaled, 0.0, float(self.gaps))
             first = np.minimum(np.floor(scaled).astype(np.int64), self.gaps - 1)
         t = scaled - first
-        share = np.stack(
-            [(1 - t) ** 3, 3 * t**3 - 6 * t**2 + 4, 3 * (t**2 + t - t**3) + 1, t**3], axis=1
-        ) / 6.0
+        share = (
+            np.stack([(1 - t) ** 3, 3 * t**3 - 6 * t**2 + 4, 3 * (t**2 + t - t**3) + 1, t**3], axis=1) / 6.0
+        )
         acts = first[:, None] + np.arange(4)
         return (acts - 1) % self.count if self.closed else acts, share
 
@@ -76,7 +76,7 @@ class VenueNodes:
 
 
 def venue_nodes(day: Day) -> VenueNodes:
-    """Return the knots of a day's venue: about 60 m apart, farther on a long one."""
+    """Return the knots of a day's venue: about 40 m apart, farther on a long one."""
     if day.flat:
         return VenueNodes(1, day.venue_length, day.closed, flat=True)
     gaps = int(np.clip(round(day.venue_length / priors.NODE_SPACING), 6, priors.MOST_NODES))

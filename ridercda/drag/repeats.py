@@ -43,7 +43,9 @@ class Pooled:
 
     figures: RunFigures
     mixed: MixedFit
-    design: FloatArray  # (n, k): columns are setups present, coast-down offset if any, then the shared unknowns
+    design: (
+        FloatArray  # (n, k): columns are setups present, coast-down offset if any, then the shared unknowns
+    )
     setups: tuple[int, ...]  # setup of each of the first columns
     shared: slice  # columns of the shared unknowns
     drift: FloatArray  # (n, n): covariance of the common drift

@@ -50,10 +50,20 @@ def air_of_run(session: Session, run: Run, ride: Ride, ride_clock: float | None)
         seen = seen[np.isfinite(seen)]
         if seen.size:
             temperature = float(np.median(seen))
-            notes.append(("air-assumed", "Air temperature is the head unit's: it reads high in the sun, 3 K make 1 % of CdA."))  # noqa: E501
+            notes.append(
+                (
+                    "air-assumed",
+                    "Air temperature is the head unit's: it reads high in the sun, 3 K make 1 % of CdA.",
+                )
+            )
     if temperature is None:
         temperature = default("air.temperature")
-        notes.append(("air-assumed", f"No air temperature is given; {temperature - 273.15:.0f} °C is assumed. 3 K make 1 % of CdA."))  # noqa: E501
+        notes.append(
+            (
+                "air-assumed",
+                f"No air temperature is given; {temperature - 273.15:.0f} °C is assumed. 3 K make 1 % of CdA.",
+            )
+        )
     pressure = air.pressure
     if pressure is None:
         altitude = air.altitude
@@ -62,7 +72,12 @@ def air_of_run(session: Session, run: Run, ride: Ride, ride_clock: float | None)
         sea_level = air.sea_level_pressure
         if sea_level is None:
             sea_level = default("air.sea_level_pressure")
-            notes.append(("air-assumed", "No air pressure is given; the standard one at the venue's altitude is assumed. 10 hPa make 1 % of CdA."))  # noqa: E501
+            notes.append(
+                (
+                    "air-assumed",
+                    "No air pressure is given; the standard one at the venue's altitude is assumed. 10 hPa make 1 % of CdA.",
+                )
+            )
         if altitude is None:
             altitude = default("air.altitude")
         pressure = float(pressure_from_sea_level(sea_level, altitude, temperature))
