@@ -11,6 +11,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
+from functools import partial
 from types import MappingProxyType
 
 import numpy as np
@@ -106,11 +107,12 @@ def model_of(day: Day) -> Model:
     tables = []
     for run in day.runs:
         r = run.records
-        acts, share = nodes.place(r.position)
+        acts, share = nodes.place(np.nan_to_num(r.position))
         headed = np.isfinite(r.heading)
         lagged = np.zeros(r.size)
         if r.size > 2:
-            lagged[1:-1] = (r.power[2:] - r.power[:-2]) / np.maximum(r.time[2:] - r.time[:-2], 1e-6)
+            change = (r.power[2:] - r.power[:-2]) / np.maximum(r.time[2:] - r.time[:-2], 1e-6)
+            lagged[1:-1] = np.nan_to_num(change)  # beside a dropout the rate is unknown: no lag there
         table = np.empty((r.size, at.COLUMNS))
         table[:, at.DT] = r.interval
         table[:, at.POWER] = r.power
@@ -264,7 +266,7 @@ def fit(model: Model, watch: Watch = NO_WATCH) -> Fit:
         )
         for round_ in range(NOISE_ROUNDS):
             watch.step(round_, NOISE_ROUNDS)
-            raised = list(pool.map(lambda i: _raised(model, here, i), in_play))
+            raised = list(pool.map(partial(_raised, model, here), in_play))
             gradient, information = _noise_score(model, here, raised, in_play)
             move = np.zeros(at.NOISES)
             wanted = np.linalg.solve(information, gradient)
@@ -280,7 +282,7 @@ def fit(model: Model, watch: Watch = NO_WATCH) -> Fit:
                 break
             here = there
         here = settle(model, here, rounds=GAUSS_NEWTON_ROUNDS)
-        raised = list(pool.map(lambda i: _raised(model, here, i), in_play))
+        raised = list(pool.map(partial(_raised, model, here), in_play))
         information = _noise_curvature(model, here, in_play, pool)
     noise_covariance = np.zeros((at.NOISES, at.NOISES))
     noise_covariance[np.ix_(in_play, in_play)] = np.linalg.inv(information)
@@ -360,8 +362,8 @@ def _noise_score(
     d_log_s = np.stack([np.log(r.variance[seen] / here.variance[seen]) for r in raised]) / NOISE_STEP
     size = np.sqrt(here.variance[seen])
     plain = here.innovation[seen]
-    d_e = [r.innovation[seen] * np.sqrt(r.variance[seen]) / size - plain for r in raised]
-    d_e = np.stack(d_e) / NOISE_STEP
+    moved = [r.innovation[seen] * np.sqrt(r.variance[seen]) / size - plain for r in raised]
+    d_e = np.stack(moved) / NOISE_STEP
     information = 0.5 * d_log_s @ d_log_s.T + d_e @ d_e.T
     # What the unknowns can mimic is no information: a stronger gust's mean square looks like rolling resistance.
     d_gradient = np.stack([r.gradient - here.gradient for r in raised]) / NOISE_STEP

@@ -140,7 +140,7 @@ def _pieces(
     projection = inverse - inverse @ design @ weights
     return _Pieces(
         weights @ y,
-        normal,
+        np.asarray(normal),
         weights,
         tuple(v * projection @ c.structure for v, c in zip(variances, components, strict=True)),
         projection @ y,

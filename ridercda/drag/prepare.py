@@ -70,7 +70,8 @@ def prepare_day(session: Session, rides: Mapping[str, Ride], watch: Watch = NO_W
         notes.append(
             (
                 "one-sided-power",
-                "Power is measured on one side and doubled; the balance of the legs may change with effort and position, which no interval here covers.",
+                "Power is measured on one side and doubled; the balance of the legs may change with effort and "
+                "position, which no interval here covers.",
             )
         )
 
@@ -97,7 +98,8 @@ def prepare_day(session: Session, rides: Mapping[str, Ride], watch: Watch = NO_W
                 notes.append(
                     (
                         "circumference",
-                        f"Ride {run.ride}: the wheel reads {100 * (1 / scale.factor - 1):+.1f} % in distance against the {scale.basis}; corrected.",
+                        f"Ride {run.ride}: the wheel reads {100 * (1 / scale.factor - 1):+.1f} % in distance against the "
+                        f"{scale.basis}; corrected.",
                     )
                 )
         air = air_of_run(session, run, ride, clock.get(run.ride))
@@ -144,14 +146,16 @@ def prepare_day(session: Session, rides: Mapping[str, Ride], watch: Watch = NO_W
             notes.append(
                 (
                     "wind-not-modelled",
-                    "No positions were recorded, so headings are unknown: a steady wind is not modelled and makes absolute CdA or Crr come out high.",
+                    "No positions were recorded, so headings are unknown: a steady wind is not modelled and makes "
+                    "absolute CdA or Crr come out high.",
                 )
             )
         elif kind is not VenueKind.TRACK and all(run.wind_from_report is None for run in runs):
             notes.append(
                 (
                     "wind-unknown",
-                    "No wind is reported; it is found from the rides alone. A report, even a rough one, tightens absolute values.",
+                    "No wind is reported; it is found from the rides alone. A report, even a rough one, tightens "
+                    "absolute values.",
                 )
             )
     reference = session.reference_speed

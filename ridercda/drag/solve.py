@@ -99,7 +99,6 @@ def _fit_with_lag(day: Day, watch: Watch) -> tuple[Fit, int]:
 def _estimate(fitted: Fit, warnings: list[SolveWarning]) -> Estimate:
     day = fitted.model.day
     pooled = pool(fitted, run_figures(fitted, fitted.covariance))
-    mixed = pooled.mixed
     crr = [_tyre(pooled, day, t) for t in range(len(day.tyres))]
     apart = _told_apart(pooled, day)
     if not apart:
