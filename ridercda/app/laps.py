@@ -2,17 +2,13 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
-
 from PySide6.QtCore import QObject, Signal
 
 from ridercda.app import tasks
+from ridercda.app.lap_traces import Laps
 from ridercda.app.solving import Solving, State
 from ridercda.app.worker import Job, Worker
 from ridercda.drag.estimate import Estimate
-
-if TYPE_CHECKING:
-    from ridercda.app.pages.lap_view import Laps
 
 
 class LapTraces(QObject):

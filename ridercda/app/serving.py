@@ -17,8 +17,14 @@ Task = Callable[..., Any]
 _POLL_EVERY = 0.005  # s between looks for a cancellation; a look costs some 5 microseconds
 _TELL_EVERY = 0.05  # s between reports of progress
 
+
+def read_only(content: dict[Any, Any]) -> MappingProxyType[Any, Any]:
+    """Return a read-only view of a dictionary."""
+    return MappingProxyType(content)
+
+
 # Read-only mappings of sessions, rides and estimates cross the border as what they are.
-ForkingPickler.register(MappingProxyType, lambda mapping: (MappingProxyType, (dict(mapping),)))
+ForkingPickler.register(MappingProxyType, lambda mapping: (read_only, (dict(mapping),)))
 
 
 class _PipeWatch:

@@ -109,8 +109,7 @@ class Solving(QObject):
         fresh = {ride: array for ride, array in rides.items() if self._sent.get(ride) is not array}
         self._sent.update(fresh)
         self.progress = 0.0
-        folder = self._document.folder
-        self._job = self._worker.request(tasks.solve, session, folder, fresh, tuple(rides))
+        self._job = self._worker.request(tasks.solve, session, fresh, tuple(rides))
         self._job.progressed.connect(self._on_job_progressed)
         self._job.finished.connect(lambda estimate: self._on_job_finished(full_key, estimate))
         self._job.failed.connect(lambda message: self._on_job_failed(full_key, message))

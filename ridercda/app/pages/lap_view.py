@@ -3,40 +3,15 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
-
 import numpy as np
-import numpy.typing as npt
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
 from ridercda.app.desk import Desk
+from ridercda.app.lap_traces import Laps
 from ridercda.app.widgets.card import ChartCard
 from ridercda.app.widgets.card_row import CardRow
 from ridercda.app.widgets.line_chart import Curve, LineChart
 from ridercda.units import Kind
-
-FloatArray = npt.NDArray[np.float64]
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class LapTrace:
-    """One lap along the venue."""
-
-    run: str
-    lap: int
-    time: FloatArray  # on the ride's clock [s]
-    position: FloatArray  # along the venue [m]
-    elevation: FloatArray  # virtual, at the estimate's CdA and Crr [m]
-    residual: FloatArray  # against the profile [m]
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class Laps:
-    """The laps of a day and the profile they share."""
-
-    position: FloatArray  # [m]
-    profile: FloatArray  # [m]
-    traces: tuple[LapTrace, ...]
 
 
 class LapOverlay(QWidget):

@@ -76,7 +76,7 @@ class RunsPage(Page):
         layout.setSpacing(px(12))
         layout.addWidget(self._card, 6)
         layout.addWidget(self._overlay, 5)
-        self.follow(desk.proposals.changed)
+        self.follow(desk.proposals.changed, desk.laps.changed)
 
     def _columns(self) -> tuple[Column[RunRow], ...]:
         units = self.desk.units

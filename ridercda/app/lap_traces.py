@@ -1,0 +1,99 @@
+"""Each lap's virtual elevation at the estimate's figures, and the profile the laps share (no Qt).
+
+Virtual elevation after R. Chung, "Estimating CdA with a power meter," 2012 (from memory): the rise that explains
+the measured power at the drag area and rolling resistance taken.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from ridercda.drag.day import Day, DayRun
+from ridercda.drag.estimate import Estimate, RunEstimate
+from ridercda.physics.rolling import bearing_power
+
+FloatArray = npt.NDArray[np.float64]
+GRID = 240  # points of the shared profile
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class LapTrace:
+    """One lap along the venue."""
+
+    run: str
+    lap: int
+    time: FloatArray  # on the ride's clock [s]
+    position: FloatArray  # along the venue [m]
+    elevation: FloatArray  # virtual, from the lap's own beginning on [m]
+    residual: FloatArray  # against the profile [m]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Laps:
+    """The laps of a day and the profile they share."""
+
+    position: FloatArray  # [m]
+    profile: FloatArray  # [m]
+    traces: tuple[LapTrace, ...]
+
+
+def laps_of(day: Day, estimate: Estimate) -> Laps | None:
+    """Return the laps of a day at the figures of its estimate; None where there is no figure or no lap."""
+    levels = {setup.id: setup.cda.value for setup in estimate.setups if setup.cda}
+    crr = {tyres.id: tyres.crr.value for tyres in estimate.tyres if tyres.crr}
+    found = {run.id: run for run in estimate.runs}
+    raw: list[tuple[str, int, FloatArray, FloatArray, FloatArray]] = []
+    for run in day.runs:
+        setup = day.setups[run.setup]
+        if setup not in levels or day.tyres[run.tyres].id not in crr or run.id not in found:
+            continue
+        rise = _rise(run, found[run.id], levels[setup], crr[day.tyres[run.tyres].id], day)
+        for lap in range(run.laps):
+            inside = run.records.lap == lap
+            if inside.sum() < 10:
+                continue
+            elevation = np.cumsum(np.nan_to_num(rise[inside]))
+            raw.append((run.id, lap, run.records.time[inside], run.records.position[inside] % day.venue_length, elevation))
+    if not raw:
+        return None
+    grid = np.linspace(0.0, day.venue_length, GRID)
+    on_grid = []
+    for _, _, _, position, elevation in raw:
+        order = np.argsort(position, kind="stable")
+        on_grid.append(np.interp(grid, position[order], elevation[order], left=np.nan, right=np.nan))
+    stack = np.vstack(on_grid)
+    stack -= np.nanmean(stack, axis=1, keepdims=True)
+    counted = np.isfinite(stack).any(axis=0)
+    profile = np.full(GRID, np.nan)
+    profile[counted] = np.nanmean(stack[:, counted], axis=0)
+    traces = []
+    for (run_id, lap, time, position, elevation), row in zip(raw, on_grid, strict=True):
+        shifted = elevation - np.nanmean(row)
+        shared = np.interp(position, grid[counted], profile[counted])
+        order = np.argsort(position, kind="stable")
+        traces.append(LapTrace(run_id, lap, time[order], position[order], shifted[order], (shifted - shared)[order]))
+    return Laps(grid[counted], profile[counted], tuple(traces))
+
+
+def _rise(run: DayRun, figure: RunEstimate, cda: float, crr: float, day: Day) -> FloatArray:
+    """Return the rise over each record interval that explains its power. [m]"""
+    records = run.records
+    speed = records.speed * records.path_ratio
+    distance = speed * records.interval
+    along = speed.copy()
+    if figure.wind_speed is not None and figure.wind_from is not None:
+        against = figure.wind_speed * np.cos(figure.wind_from - records.heading)
+        along = speed + np.where(np.isfinite(against), against, 0.0)
+    along = np.where(np.isfinite(records.air_speed), records.air_speed, along)
+    power = np.where(records.power > 0.0, records.power * run.efficiency, records.power)
+    air = 0.5 * records.density * cda * along * np.abs(along) * distance
+    rolling = crr * run.mass * day.gravity * records.load * records.speed * records.interval
+    ends = np.concatenate([[speed[0]], 0.5 * (speed[1:] + speed[:-1]), [speed[-1]]])
+    kinetic = 0.5 * (run.mass + run.rotating_mass) * np.diff(ends**2)
+    energy = (power - bearing_power(records.speed)) * records.interval - air - rolling - kinetic
+    energy += records.lean_power * records.interval
+    rise: FloatArray = energy / (run.mass * day.gravity)
+    return rise
