@@ -56,7 +56,9 @@ def laps_of(day: Day, estimate: Estimate) -> Laps | None:
             if inside.sum() < 10:
                 continue
             elevation = np.cumsum(np.nan_to_num(rise[inside]))
-            raw.append((run.id, lap, run.records.time[inside], run.records.position[inside] % day.venue_length, elevation))
+            position = _within_lap(run.records.position[inside], day.venue_length)
+            whole = (position >= 0.0) & (position <= day.venue_length)
+            raw.append((run.id, lap, run.records.time[inside][whole], position[whole], elevation[whole]))
     if not raw:
         return None
     grid = np.linspace(0.0, day.venue_length, GRID)
@@ -76,6 +78,16 @@ def laps_of(day: Day, estimate: Estimate) -> Laps | None:
         order = np.argsort(position, kind="stable")
         traces.append(LapTrace(run_id, lap, time[order], position[order], shifted[order], (shifted - shared)[order]))
     return Laps(grid[counted], profile[counted], tuple(traces))
+
+
+def _within_lap(position: FloatArray, length: float) -> FloatArray:
+    """Return places along one lap, begun and ended without a jump where the lap's line is crossed. [m]"""
+    place = position % length
+    edge = max(1, place.size // 10)
+    first, last = place[:edge], place[-edge:]
+    first[first > 0.8 * length] -= length
+    last[last < 0.2 * length] += length
+    return place
 
 
 def _rise(run: DayRun, figure: RunEstimate, cda: float, crr: float, day: Day) -> FloatArray:

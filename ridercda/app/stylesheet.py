@@ -65,13 +65,13 @@ QComboBox QAbstractItemView { background: $card; color: $ink; border: 1px solid 
   selection-background-color: $chosen; selection-color: $ink; padding: ${s4}px; }
 QTableView, QListView, QTreeView { background: transparent; border: 0; color: $ink; outline: 0; gridline-color: $hairline;
   selection-background-color: $chosen; selection-color: $ink; alternate-background-color: transparent; }
-QTableView::item, QListView::item { padding: 0 ${s6}px; border: 0; }
+QTableView::item, QListView::item { padding: 0 ${s2}px; border: 0; }
 QTableView::item { border-bottom: 1px solid $hairline; }
 QTableView::item:hover, QListView::item:hover { background: $hover; }
 QTableView::item:selected, QListView::item:selected { background: $chosen; color: $ink; }
-QHeaderView { background: transparent; border: 0; }
+QHeaderView { background: transparent; border: 0; font-size: ${small}px; }
 QHeaderView::section { background: $card; color: $quiet; border: 0; border-bottom: 1px solid $hairline;
-  padding: ${s4}px ${s9}px; font-size: ${small}px; }
+  padding: ${s4}px ${s5}px; font-size: ${small}px; }
 QHeaderView::up-arrow, QHeaderView::down-arrow { image: url($arrow); width: ${s8}px; height: ${s8}px;
   subcontrol-origin: margin; subcontrol-position: bottom center; }
 QAbstractScrollArea::corner { background: transparent; border: 0; }
@@ -109,7 +109,7 @@ def stylesheet(theme: Theme, arrow: str) -> str:
     """
     roles = theme.roles
     names = {name: getattr(roles, name) for name in roles.__slots__}
-    sizes = {f"s{size}": str(theme.px(size)) for size in (2, 4, 6, 8, 9, 10, 12, 16, 20, 24)}
+    sizes = {f"s{size}": str(theme.px(size)) for size in (2, 4, 5, 6, 8, 10, 12, 16, 20, 24)}
     return _SHEET.substitute(
         names,
         **sizes,

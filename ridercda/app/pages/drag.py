@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWidget
 
 from ridercda.app.desk import Desk
-from ridercda.app.drag_words import against_baseline, answer, cause_words, difference_of
+from ridercda.app.drag_words import against_baseline, answer, difference_of
 from ridercda.app.pages import drag_view
 from ridercda.app.pages.page import Blank, Page
 from ridercda.app.run_edits import RunEdits
@@ -16,6 +16,8 @@ from ridercda.app.widgets.card import Card, ChartCard, rule
 from ridercda.app.widgets.card_row import CardRow
 from ridercda.app.widgets.ellipse_chart import EllipseChart
 from ridercda.app.widgets.interval_chart import IntervalChart
+from ridercda.app.widgets.links import link
+from ridercda.app.widgets.notes import Notes
 from ridercda.app.widgets.run_chart import RunChart
 from ridercda.app.widgets.share_chart import ShareChart
 from ridercda.app.widgets.flags import set_flag
@@ -45,12 +47,10 @@ class DragPage(Page):
         self._evidence = self._built_evidence()
         self._diagnostics = self._built_diagnostics()
         self._diagnostics.hide()
-        self._switch = QPushButton()
+        self._switch = link("")
         self._switch.setCheckable(True)
         self._switch.toggled.connect(self._on_switch_toggled)
-        self._warnings = QLabel()
-        self._warnings.setProperty("caution", True)
-        self._warnings.setWordWrap(True)
+        self._warnings = Notes(self.theme)
         line = QHBoxLayout()
         line.addWidget(self._warnings, 1)
         line.addWidget(self._switch, 0, Qt.AlignmentFlag.AlignTop)
@@ -144,9 +144,7 @@ class DragPage(Page):
         self._beside.setText(words.beside)
         self._beside.setVisible(bool(words.beside))
         self._switch.setFont(self.theme.font())
-        self._warnings.setFont(self.theme.font(Type.AXIS))
-        self._warnings.setText("  ".join(warning.message for warning in estimate.warnings[:2]))
-        self._warnings.setToolTip("\n".join(warning.message for warning in estimate.warnings))
+        self._warnings.show_messages(tuple(warning.message for warning in estimate.warnings))
         self._intervals.show_picture(drag_view.interval_picture(self.desk, estimate, baseline.id))
         dots, levels = drag_view.run_dots(self.desk, estimate)
         self._runs_chart.show_runs(dots, levels, self.tr("CdA of each run [m²]"))
@@ -161,8 +159,7 @@ class DragPage(Page):
         pairs = against_baseline(estimate, baseline)
         picked = difference_of(estimate, self.desk.selection.setup, baseline)
         pair = picked or (pairs[0] if pairs else None)
-        shares = tuple((*cause_words(key)[:1], share, cause_words(key)[1]) for key, share in (pair.variance_shares if pair else {}).items())
-        self._limits_chart.show_shares(shares)
+        self._limits_chart.show_shares(drag_view.shares(pair))
         title = self.tr("What limits it")
         if pair is not None and pair.setup in badges and pair.against in badges:
             title = self.tr("What limits {} against {}").format(badges[pair.setup].letter, badges[pair.against].letter)

@@ -10,7 +10,7 @@ import numpy as np
 from PySide6.QtCore import QCoreApplication
 
 from ridercda.app.desk import Desk
-from ridercda.app.drag_words import against_baseline, verdict_words
+from ridercda.app.drag_words import against_baseline, cause_words, verdict_words
 from ridercda.app.figures import bounds_text, plus_minus, value_text
 from ridercda.app.letters import Badge
 from ridercda.app.quantities import plain
@@ -21,7 +21,7 @@ from ridercda.app.widgets.interval_chart import IntervalPicture, IntervalRow, Se
 from ridercda.app.widgets.run_chart import Level, RunDot
 from ridercda.app.widgets.scatter_chart import Point, ScatterChart
 from ridercda.app.widgets.table import Column
-from ridercda.drag.estimate import Estimate, RunEstimate
+from ridercda.drag.estimate import Difference, Estimate, RunEstimate
 from ridercda.physics.power_balance import road_power
 from ridercda.session.defaults import default
 from ridercda.session.document import MeterLocation, Session
@@ -70,7 +70,7 @@ def interval_picture(desk: Desk, estimate: Estimate, baseline: str) -> IntervalP
             IntervalRow(
                 pair.setup, desk.theme.chip(badges[pair.setup].index), badges[pair.setup].letter, verdict_words(pair),
                 pair.cda.value if pair.cda else None, pair.cda.interval if pair.cda else None, singles, tip or pair.reason,
-                picked=pair.setup == desk.selection.setup,
+                picked=pair.setup == desk.selection.setup, note=badges[pair.setup].name,
             )  # fmt: skip
         )
     factor = watts_per_area(session, estimate)
@@ -153,6 +153,20 @@ def joint_radius(degrees_of_freedom: float, confidence: float) -> float:
         return math.sqrt(-2.0 * math.log1p(-confidence))
     half = degrees_of_freedom / 2.0
     return math.sqrt(2.0 * half * ((1.0 - confidence) ** (-1.0 / half) - 1.0))
+
+
+SHARES_SHOWN = 4
+
+
+def shares(pair: Difference | None) -> tuple[tuple[str, float, str], ...]:
+    """Return the largest causes of a difference's variance, the small ones taken together."""
+    causes = sorted((pair.variance_shares if pair else {}).items(), key=lambda cause: -cause[1])
+    shown = [(cause_words(key)[0], float(share), cause_words(key)[1]) for key, share in causes]
+    if len(shown) > SHARES_SHOWN:
+        rest = shown[SHARES_SHOWN - 1 :]
+        names = ", ".join(name for name, _, _ in rest)
+        shown = [*shown[: SHARES_SHOWN - 1], (_tr("Others"), sum(share for _, share, _ in rest), names)]
+    return tuple(shown)
 
 
 @dataclass(frozen=True, slots=True)

@@ -35,6 +35,7 @@ class FaultTable(QWidget):
         self.model = TableModel[FaultRow](self._columns(), key=lambda row: (row.ride, row.number))
         self.view = TableView(desk.theme, self.model)
         self.view.setItemDelegateForColumn(3, _Choices(self.view))
+        self.view.set_empty_text(self.tr("Nothing wrong was found in this ride."))
         self.view.keys_picked.connect(self._on_view_picked)
         layout = QVBoxLayout(self)
         layout.setContentsMargins(0, 0, 0, 0)

@@ -117,7 +117,7 @@ class RidesPage(Page):
         self._message.setVisible(bool(item and item.message))
         self._faults.show_ride(picked)
         count = len(item.ride.faults) if item and item.ride else 0
-        self._faults_card.set_note(self.tr("%n fault(s) in {}", "", count).format(picked) if count else self.tr("none found"))
+        self._faults_card.set_note(self.tr("%n fault(s) in {}", "", count).format(picked) if count else "")
         self._map.show_tracks(map_tracks(desk))
         self._map_card.refresh_table()
 

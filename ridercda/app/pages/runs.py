@@ -94,6 +94,11 @@ class RunsPage(Page):
         return (
             Column(self.tr("Run"), lambda r: f"{r.run.id} · {r.badge.name}", raw=lambda r: float(r.run.id) if r.run.id.isdigit() else r.run.id,
                    chip=lambda r: r.badge, tip=lambda r: r.badge.name),
+            Column(self.tr("CdA [m²]"), lambda r: f"{value_text(r.figure.cda)} {plus_minus(r.figure.cda)}" if r.figure and r.figure.cda else "–",
+                   raw=lambda r: r.figure.cda.value if r.figure and r.figure.cda else None),
+            Column(self.tr("vs repeats [σ]"), lambda r: "–" if r.figure is None or r.figure.against_repeats is None else plain(r.figure.against_repeats, 1, signed=True),
+                   raw=lambda r: r.figure.against_repeats if r.figure else None,
+                   header_tip=self.tr("How far this run lies from its repeats, in standard errors")),
             Column(self.tr("Starts"), lambda r: clock(r.moment) if r.dated else elapsed(r.run.start), raw=lambda r: r.moment),
             Column(self.tr("Length"), lambda r: "–" if r.length is None else duration(r.length), raw=lambda r: r.length),
             Column(self.tr("Laps"), lambda r: str(r.figure.laps) if r.figure else "–", raw=lambda r: float(r.figure.laps) if r.figure else None),
@@ -101,11 +106,6 @@ class RunsPage(Page):
             figure(Kind.SPEED, "speed"),
             figure(Kind.DENSITY, "air_density"),
             Column(self.tr("Wind"), lambda r: wind_text(self.desk, r.figure) if r.figure else "–", raw=lambda r: r.figure.wind_speed if r.figure else None),
-            Column(self.tr("CdA [m²]"), lambda r: f"{value_text(r.figure.cda)} {plus_minus(r.figure.cda)}" if r.figure and r.figure.cda else "–",
-                   raw=lambda r: r.figure.cda.value if r.figure and r.figure.cda else None),
-            Column(self.tr("vs repeats [σ]"), lambda r: "–" if r.figure is None or r.figure.against_repeats is None else plain(r.figure.against_repeats, 1, signed=True),
-                   raw=lambda r: r.figure.against_repeats if r.figure else None,
-                   header_tip=self.tr("How far this run lies from its repeats, in standard errors")),
             Column(self.tr("Left out because"), lambda r: r.run.excluded, tip=lambda r: r.run.note or r.run.excluded),
         )  # fmt: skip
 

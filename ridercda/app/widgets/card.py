@@ -78,6 +78,7 @@ class ChartCard(Card):
         chart.setAccessibleName(title)
         self._model: TableModel[tuple[str, ...]] = TableModel(())
         self._table = TableView(theme, self._model)
+        self._table.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Ignored)  # the picture sets the size
         self._stack = QStackedWidget()
         self._stack.addWidget(chart)
         self._stack.addWidget(self._table)

@@ -29,6 +29,7 @@ class IntervalRow:
     tip: str = ""
     columns: tuple[str, ...] = ()  # texts set to the right, under `IntervalPicture.columns`
     picked: bool = False
+    note: str = ""  # under the words, where there is room
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,9 +70,9 @@ class IntervalChart(Chart):
             self.update()
 
     def sizeHint(self) -> QSize:
-        """Ask for a comfortable line per row."""
+        """Ask for a line per row, slim enough that a page seldom scrolls; what room there is gets used."""
         rows = max(2, len(self._picture.rows))
-        return QSize(self.theme.px(560), self.theme.px(84 + rows * 52))
+        return QSize(self.theme.px(560), self.theme.px(72 + rows * 30))
 
     def minimumSizeHint(self) -> QSize:
         """Ask for lines that still stand apart."""
@@ -95,8 +96,10 @@ class IntervalChart(Chart):
         picture, px = self._picture, self.theme.px
         if not picture.rows:
             return []
-        strong = self.theme.font(Type.TEXT, strong=True)
-        words_width = max(drawing.width_of(strong, row.words) for row in picture.rows)
+        strong, small = self.theme.font(Type.TEXT, strong=True), self.theme.font(Type.AXIS)
+        words_width = max(
+            max(drawing.width_of(strong, row.words), min(drawing.width_of(small, row.note), px(190))) for row in picture.rows
+        )
         column_width = px(84)
         left = area.left() + px(36) + min(words_width + px(24), area.width() * 0.32)
         right = area.right() - px(24) - column_width * len(picture.columns)
@@ -161,13 +164,16 @@ class IntervalChart(Chart):
                   area: QRectF, left: float, right: float, column_width: float) -> None:  # fmt: skip
         theme, px = self.theme, self.theme.px
         side = min(px(22), pitch * 0.8)
-        lift = px(5) if pitch > px(36) and row.singles else 0
+        lift = px(7) if pitch > px(36) else 0
         line = middle - lift
         chip_rect = QRectF(area.left() + px(4), line - side / 2, side, side)
         drawing.chip(painter, theme, chip_rect, row.chip, row.letter)
         words = QRectF(chip_rect.right() + px(10), line - px(12), left - chip_rect.right() - px(20), px(24))
         strong = theme.font(Type.TEXT, strong=True)
         drawing.text(painter, words, row.words, strong, theme.colour("ink"))
+        if row.note and pitch > px(36):
+            under = words.translated(0, px(18))
+            drawing.text(painter, under, row.note, theme.font(Type.AXIS), theme.colour("quiet"))
         if row.interval:
             thick = min(px(18), pitch * 0.5)
             ends = [across(end) for end in row.interval]

@@ -1,4 +1,4 @@
-"""Shares of a whole as bars, the largest first."""
+"""Shares of a whole as bars."""
 
 from __future__ import annotations
 
@@ -24,13 +24,13 @@ class ShareChart(Chart):
     def show_shares(self, shares: tuple[tuple[str, float, str], ...]) -> None:
         """Show other shares: name, share of one, and what it means."""
         if shares != self._shares:
-            self._shares = tuple(sorted(shares, key=lambda share: -share[1]))
+            self._shares = shares
             self.updateGeometry()
             self.update()
 
     def sizeHint(self) -> QSize:
         """Ask for a line per share."""
-        return QSize(self.theme.px(240), self.theme.px(8 + 28 * max(1, len(self._shares))))
+        return QSize(self.theme.px(240), self.theme.px(4 + 22 * max(1, len(self._shares))))
 
     def minimumSizeHint(self) -> QSize:
         """Ask for a tight line per share."""
@@ -49,7 +49,7 @@ class ShareChart(Chart):
         font, strong = theme.font(), theme.font(strong=True)
         names = min(max(drawing.width_of(font, name) for name, _, _ in self._shares), area.width() * 0.5)
         number = drawing.width_of(strong, "100\u00a0%")
-        pitch = min(px(30), area.height() / len(self._shares))
+        pitch = min(px(28), area.height() / len(self._shares))
         left, right = area.left() + names + px(12), area.right() - number - px(8)
         largest = max(share for _, share, _ in self._shares) or 1.0
         marks = []

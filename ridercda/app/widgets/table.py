@@ -18,7 +18,7 @@ from PySide6.QtCore import (
     Qt,
     Signal,
 )
-from PySide6.QtGui import QColor, QGuiApplication, QKeyEvent, QKeySequence, QPainter
+from PySide6.QtGui import QColor, QGuiApplication, QKeyEvent, QKeySequence, QPainter, QPaintEvent
 from PySide6.QtWidgets import (
     QAbstractItemView,
     QHeaderView,
@@ -251,6 +251,7 @@ class TableView(QTableView):
         header.setMinimumSectionSize(theme.px(36))
         self.setItemDelegate(_Cells(theme, self))
         self._quiet_selection = False
+        self._empty = ""
         self._kept: tuple[Hashable, ...] = ()
         self.selectionModel().selectionChanged.connect(self._on_selection_changed)
         self.entered.connect(lambda index: self.row_entered.emit(index.data(KEY_ROLE)))
@@ -291,6 +292,19 @@ class TableView(QTableView):
             model.setCurrentIndex(last, QItemSelectionModel.SelectionFlag.NoUpdate)
             self.scrollTo(last)
         self._quiet_selection = False
+
+    def set_empty_text(self, words: str) -> None:
+        """Say what stands in the table while it has no rows."""
+        self._empty = words
+
+    def paintEvent(self, event: QPaintEvent) -> None:
+        """Draw the rows, or say why there are none."""
+        super().paintEvent(event)
+        if self._empty and not self._proxy.rowCount():
+            painter = QPainter(self.viewport())
+            area = QRectF(self.viewport().rect())
+            drawing.text(painter, area, self._empty, self._theme.font(), self._theme.colour("quiet"), drawing.CENTRE)
+            painter.end()
 
     def picked_keys(self) -> tuple[Hashable, ...]:
         """Return the keys of the picked rows."""
