@@ -50,8 +50,8 @@ def all_differences(
     if not pairs:
         return ()
     lines = [pooled.contrast(a, b) for a, b in pairs]
-    degrees = [pooled.mixed.degrees_of_freedom(line) for line in lines]
-    critical = _joint_critical(lines, pooled.mixed.covariance, min(degrees), day.confidence)
+    degrees = [pooled.degrees_of_freedom(line) for line in lines]
+    critical = _joint_critical(lines, pooled.covariance, min(degrees), day.confidence)
     shares = _Shares(fit, pooled)
     tyres = {run.setup: run.tyres for run in day.runs}
     found = []
@@ -62,7 +62,7 @@ def all_differences(
             found.append(Difference(name, other, None, None, None, None, reason=reason))
             continue
         value = float(line @ pooled.mixed.coefficients)
-        variance = float(line @ pooled.mixed.covariance @ line)
+        variance = float(line @ pooled.covariance @ line)
         figure = student_figure(value, variance, freedom, day.confidence)
         # All pairs at once can never be narrower than one by one.
         single = float(stdtrit(figure.degrees_of_freedom, 0.5 + 0.5 * day.confidence))
@@ -175,7 +175,8 @@ class _Shares:
         weights = (line @ pooled.mixed.weights)[:runs]
         parts = {"repeats": pooled.mixed.variances[0] * float(weights @ weights)}
         parts["drift"] = contrast_variance(pooled, pooled.drift, line)
-        within = max(variance - sum(parts.values()), 0.0)
+        doubt = float(line @ pooled.noise_doubt @ line)
+        within = max(variance - doubt - sum(parts.values()), 0.0)
         base = contrast_variance(pooled, self._base, line)
         pieces: dict[str, float] = {}
         for name, grown in self._grown.items():
@@ -193,6 +194,9 @@ class _Shares:
             parts.update({name: within * piece / total for name, piece in pieces.items()})
         else:
             parts["other"] = within
+        parts["gusts"] = (
+            parts.get("gusts", 0.0) + doubt
+        )  # the doubt about the noise is mostly about the gusts
         everything = sum(parts.values())
         ordered = sorted(parts.items(), key=lambda item: -item[1])
         return MappingProxyType({n: v / everything for n, v in ordered if v > 0.005 * everything})

@@ -91,7 +91,9 @@ class Fit:
     log_noise_covariance: FloatArray
     by_noise: FloatArray  # (p, NOISES): how the unknowns move with the logarithms of the noise
     last: Pass
-    grown: Mapping[int, FloatArray]  # noise parameter -> covariance with it raised by the share `grown_by`
+    grown: Mapping[
+        int, FloatArray
+    ]  # noise parameter -> covariance given noise, with it raised by the share `grown_by`
     grown_by: float = NOISE_STEP
 
     @property
@@ -286,6 +288,8 @@ def fit(model: Model, watch: Watch = NO_WATCH) -> Fit:
         information = _noise_curvature(model, here, in_play, pool)
     noise_covariance = np.zeros((at.NOISES, at.NOISES))
     noise_covariance[np.ix_(in_play, in_play)] = np.linalg.inv(information)
+    if not model.day.flat:
+        noise_covariance[at.GUST_SD, at.GUST_SD] += priors.GUST_MODEL_SD**2
     by_noise = np.zeros((model.layout.size, at.NOISES))
     free = model.layout.free
     for i, other in zip(in_play, raised, strict=True):
@@ -295,8 +299,8 @@ def fit(model: Model, watch: Watch = NO_WATCH) -> Fit:
     by_estimate = by_noise @ noise_covariance @ by_noise.T
     grown = {}
     for i, other in zip(in_play, raised, strict=True):
-        grown[int(i)] = by_estimate.copy()
-        grown[int(i)][np.ix_(free, free)] += _inverse(other.information)
+        grown[int(i)] = np.zeros_like(given)
+        grown[int(i)][np.ix_(free, free)] = _inverse(other.information)
     covariance = given + by_estimate
     return Fit(
         model,

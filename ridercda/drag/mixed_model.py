@@ -109,7 +109,7 @@ def fit_mixed(
     _, information = _score(pieces, components, log_variance)
     scale = np.outer(variances, variances)
     by_log = np.linalg.pinv(information)
-    slopes = np.stack([pieces.weights @ c.structure @ pieces.weights.T for c in components])
+    slopes: FloatArray = np.stack([pieces.weights @ c.structure @ pieces.weights.T for c in components])
     return MixedFit(pieces.coefficients, pieces.covariance, variances, by_log * scale, slopes, pieces.weights)
 
 

@@ -28,8 +28,8 @@ LONGEST_INTERVAL = 5.0  # [s] a longer record says too little of what happened i
 FEWEST_RECORDS = 20
 FEWEST_LAPS = 2
 COASTING_POWER = 30.0  # [W]
-BRAKE_SURELY = 0.5  # [m/s^2] what a 4 % slope and soft tyres could do
-BRAKE_WITH_SPEED = 0.003  # [1/m] air at a CdA of 0.4 m^2 on 80 kg
+EASED_OFF = 0.45  # of the run's usual power
+SLOWING = 0.2  # [m/s^2]
 SHARPEST_PATH = 0.15  # [1/m] a tighter curve is a turn on the spot, or noise of position
 LIGHTEST, HEAVIEST = 30.0, 250.0  # [kg] all up
 
@@ -248,7 +248,8 @@ def _records(
     usable &= np.isfinite(power) & np.isfinite(speed) & np.isfinite(position)
     usable &= np.nan_to_num(speed) >= SLOWEST
     usable &= (dt > 0) & (dt <= LONGEST_INTERVAL)
-    usable &= ~braking(power, speed, dt)
+    if run.kind is RunKind.PEDALLED:
+        usable &= ~braking(power, speed, dt)
     return RunRecords(
         time=time[1:].copy(),
         interval=dt,
@@ -271,20 +272,26 @@ def _records(
 
 
 def braking(power: FloatArray, speed: FloatArray, interval: FloatArray) -> npt.NDArray[np.bool_]:
-    """Return which records hold braking: coasting that slows faster than air, tyres and a slope could.
+    """Return which records may hold braking: power drops away and the bike slows.
 
-    The whole coasting span around such a record is marked, with the records next to it.
+    How hard it slows does not tell: light braking before a corner is no harder than a gust on a rise. So every such
+    span is left out, chosen by power first, which is an input, so that the choice does not lean on the drag sought.
+    The whole span of low power is marked, with the records next to it.
     """
-    coasting = np.nan_to_num(power) < COASTING_POWER
+    known = power[np.isfinite(power)]
+    usual = float(np.median(known)) if known.size else 0.0
+    low = np.nan_to_num(power) < max(EASED_OFF * usual, COASTING_POWER)
     slowing = np.zeros(power.size)
     if power.size > 1:
-        slowing[1:] = -np.diff(np.nan_to_num(speed)) / np.maximum(interval[1:], 1e-6)
-    hard = coasting & (slowing > BRAKE_SURELY + BRAKE_WITH_SPEED * np.nan_to_num(speed) ** 2)
+        change = np.diff(np.nan_to_num(speed)) / np.maximum(interval[1:], 1e-6)
+        slowing[1:] = -change
+        slowing[:-1] = np.maximum(slowing[:-1], -change)
+    hard = low & (slowing > SLOWING)
     marked = np.zeros(power.size, bool)
-    edges = np.flatnonzero(np.diff(np.concatenate([[0], coasting.astype(np.int8), [0]])))
+    edges = np.flatnonzero(np.diff(np.concatenate([[0], low.astype(np.int8), [0]])))
     for start, end in zip(edges[::2], edges[1::2], strict=True):
         if hard[start:end].any():
-            marked[max(start - 1, 0) : end + 2] = True
+            marked[max(start - 1, 0) : end + 1] = True
     return marked
 
 

@@ -41,6 +41,7 @@ ALTITUDE_SD: Final = 2.0  # [m] of a head unit's altitude profile after averagin
 ALTITUDE_DRIFT: Final = 3.0  # [m] slow error of that profile along the venue
 
 GUST_SD: Final = (0.5, 0.9)  # [m/s] median and log standard deviation
+GUST_MODEL_SD: Final = 0.05  # relative error of the gust strength found, because gusts are no exact such process
 GUST_TIME: Final = (11.0, 0.6)  # [s]
 POWER_NOISE: Final = (0.03, 0.8)  # relative
 SPEED_NOISE: Final = (0.03, 1.0)  # [m/s]

@@ -47,7 +47,7 @@ class VenueNodes:
             np.stack([(1 - t) ** 3, 3 * t**3 - 6 * t**2 + 4, 3 * (t**2 + t - t**3) + 1, t**3], axis=1) / 6.0
         )
         acts = first[:, None] + np.arange(4)
-        return (acts - 1) % self.count if self.closed else acts, np.asarray(share)
+        return (acts - 1) % self.count if self.closed else acts, np.asarray(share, dtype=np.float64)
 
     @property
     def knots(self) -> FloatArray:

@@ -15,7 +15,7 @@ import numpy.typing as npt
 from ridercda.drag import priors
 from ridercda.drag.layout import repeats_precision
 from ridercda.drag.likelihood import Fit
-from ridercda.drag.mixed_model import Component, MixedFit, fit_mixed
+from ridercda.drag.mixed_model import MOST_DEGREES, Component, MixedFit, fit_mixed
 from ridercda.session.document import RunKind
 
 FloatArray = npt.NDArray[np.float64]
@@ -31,7 +31,8 @@ class RunFigures:
     """
 
     values: FloatArray  # (n,)
-    covariance: FloatArray  # (n, n)
+    covariance: FloatArray  # (n, n), given the noise parameters
+    by_noise: FloatArray  # (n, noises): how the values move with the logarithms of the noise parameters
     runs: int
     tyres: tuple[int, ...]  # tyre sets in the shared part
     rows: tuple[int, ...]  # of the fit's parameter vector
@@ -46,6 +47,8 @@ class Pooled:
     design: (
         FloatArray  # (n, k): columns are setups present, coast-down offset if any, then the shared unknowns
     )
+    covariance: FloatArray  # (k, k) of the coefficients, the doubt about the noise parameters included
+    noise_doubt: FloatArray  # (k, k): that doubt's part of it
     setups: tuple[int, ...]  # setup of each of the first columns
     shared: slice  # columns of the shared unknowns
     drift: FloatArray  # (n, n): covariance of the common drift
@@ -59,6 +62,12 @@ class Pooled:
         """Return the column of a setup."""
         return self.setups.index(setup)
 
+    def degrees_of_freedom(self, line: FloatArray) -> float:
+        """Return Satterthwaite's degrees of freedom of a contrast; the doubt about the noise adds to its variance."""
+        within = float(line @ self.mixed.covariance @ line)
+        whole = float(line @ self.covariance @ line)
+        return min(self.mixed.degrees_of_freedom(line) * (whole / within) ** 2, MOST_DEGREES)
+
     def contrast(self, setup: int, against: int) -> FloatArray:
         """Return the contrast of two setups."""
         line = np.zeros(self.design.shape[1])
@@ -67,23 +76,30 @@ class Pooled:
         return line
 
 
-def run_figures(fit: Fit, covariance: FloatArray) -> RunFigures:
-    """Return the runs' figures under a covariance of the fit, the working prior on repeats taken out."""
+def run_figures(fit: Fit, given_noise: FloatArray) -> RunFigures:
+    """Return the runs' figures, the working prior on repeats taken out.
+
+    Parameters
+    ----------
+    fit : Fit
+    given_noise : ndarray, shape (p, p)
+        Covariance of the fit's unknowns for known noise.
+    """
     layout = fit.model.layout
     runs = layout.runs
     tyres = tuple(t for t in range(layout.crr.stop - layout.crr.start) if layout.free[layout.crr.start + t])
     rows = [*range(runs), *(layout.crr.start + t for t in tyres)]
     if layout.free[layout.power_scale]:
         rows.append(layout.power_scale)
-    part = covariance[np.ix_(rows, rows)]
-    scale = np.sqrt(np.diag(part))
-    precision = np.linalg.inv(part / np.outer(scale, scale)) / np.outer(scale, scale)
-    pull = precision @ fit.parameters[rows]
+    with_prior = _inverse(given_noise[np.ix_(rows, rows)])
+    precision = with_prior.copy()
+    pull = with_prior @ fit.parameters[rows]
     working = (1.0 - FLAT) * repeats_precision(fit.model.day)
     precision[:runs, :runs] -= working
     pull[:runs] -= working @ layout.mean[:runs]
     cleaned = _inverse(precision)
-    return RunFigures(cleaned @ pull, cleaned, runs, tyres, tuple(rows))
+    by_noise = cleaned @ with_prior @ fit.by_noise[rows]
+    return RunFigures(cleaned @ pull, cleaned, by_noise, runs, tyres, tuple(rows))
 
 
 def pool(fit: Fit, figures: RunFigures) -> Pooled:
@@ -113,10 +129,21 @@ def pool(fit: Fit, figures: RunFigures) -> Pooled:
         figures.covariance + drift + offset,
         [Component(repeats, (median * size, spread))],
     )
-    return Pooled(figures, mixed, design, setups, slice(len(setups), design.shape[1]), drift)
+    moved = mixed.weights @ figures.by_noise
+    doubt = moved @ fit.log_noise_covariance @ moved.T
+    return Pooled(
+        figures,
+        mixed,
+        design,
+        mixed.covariance + doubt,
+        doubt,
+        setups,
+        slice(len(setups), design.shape[1]),
+        drift,
+    )
 
 
-def run_alone(pooled: Pooled, run: int) -> tuple[float, float]:
+def run_alone(fit: Fit, pooled: Pooled, run: int) -> tuple[float, float]:
     """Return one run's own CdA and standard error, given what all runs say of the shared unknowns."""
     f = pooled.figures
     shared = slice(f.runs, f.values.size)
@@ -126,7 +153,9 @@ def run_alone(pooled: Pooled, run: int) -> tuple[float, float]:
     value = f.values[run] + gain @ (found - f.values[shared])
     own = f.covariance[run, run] - gain @ f.covariance[shared, run]
     known = gain @ pooled.mixed.covariance[pooled.shared, pooled.shared] @ gain
-    return float(value), float(np.sqrt(max(own + known, 0.0)))
+    moved = f.by_noise[run] + gain @ ((pooled.mixed.weights @ f.by_noise)[pooled.shared] - f.by_noise[shared])
+    doubt = moved @ fit.log_noise_covariance @ moved
+    return float(value), float(np.sqrt(max(own + known + doubt, 0.0)))
 
 
 def residuals(pooled: Pooled) -> FloatArray:

@@ -98,7 +98,7 @@ def _fit_with_lag(day: Day, watch: Watch) -> tuple[Fit, int]:
 
 def _estimate(fitted: Fit, warnings: list[SolveWarning]) -> Estimate:
     day = fitted.model.day
-    pooled = pool(fitted, run_figures(fitted, fitted.covariance))
+    pooled = pool(fitted, run_figures(fitted, fitted.covariance_given_noise))
     crr = [_tyre(pooled, day, t) for t in range(len(day.tyres))]
     apart = _told_apart(pooled, day)
     if not apart:
@@ -124,8 +124,7 @@ def _estimate(fitted: Fit, warnings: list[SolveWarning]) -> Estimate:
     runs = _runs(fitted, pooled, apart)
     names, values, covariance = _joint(pooled, day, apart)
     freedom = [
-        pooled.mixed.degrees_of_freedom(np.eye(pooled.design.shape[1])[pooled.column(s)])
-        for s in pooled.setups
+        pooled.degrees_of_freedom(np.eye(pooled.design.shape[1])[pooled.column(s)]) for s in pooled.setups
     ]
     speeds = [_means(run)[1] for run in day.runs]
     powers = [_means(run)[0] for run in day.runs]
@@ -163,8 +162,8 @@ def _coefficient(pooled: Pooled, column: int, confidence: float) -> Figure:
     line[column] = 1.0
     return student_figure(
         float(pooled.mixed.coefficients[column]),
-        float(pooled.mixed.covariance[column, column]),
-        pooled.mixed.degrees_of_freedom(line),
+        float(pooled.covariance[column, column]),
+        pooled.degrees_of_freedom(line),
         confidence,
     )
 
@@ -182,7 +181,7 @@ def _told_apart(pooled: Pooled, day: Day) -> bool:
         if day.tyres[tyres].crr is not None:
             continue
         column = pooled.shared.start + pooled.figures.tyres.index(tyres)
-        if np.sqrt(pooled.mixed.covariance[column, column]) > priors.CRR_SEPARATED * priors.CRR_SD:
+        if np.sqrt(pooled.covariance[column, column]) > priors.CRR_SEPARATED * priors.CRR_SD:
             return False
     return True
 
@@ -215,7 +214,7 @@ def _runs(fitted: Fit, pooled: Pooled, apart: bool) -> tuple[RunEstimate, ...]:
     headed = not day.flat and all(np.isfinite(run.records.heading).any() for run in day.runs)
     base = pooled.column(day.baseline) if day.baseline in pooled.setups and day.baseline is not None else None
     for r, run in enumerate(day.runs):
-        value, error = run_alone(pooled, r)
+        value, error = run_alone(fitted, pooled, r)
         east = float(fitted.parameters[layout.wind_east][r])
         north = float(fitted.parameters[layout.wind_north][r])
         power, speed = _means(run)
@@ -288,7 +287,7 @@ def _joint(pooled: Pooled, day: Day, apart: bool) -> tuple[tuple[str, ...], Floa
         values[i] = exact if column is None else pooled.mixed.coefficients[column]
     rows = [i for i, _ in known]
     cols = [c for _, c in known]
-    covariance[np.ix_(rows, rows)] = pooled.mixed.covariance[np.ix_(cols, cols)]
+    covariance[np.ix_(rows, rows)] = pooled.covariance[np.ix_(cols, cols)]
     return tuple(name for name, _, _ in columns), values, 0.5 * (covariance + covariance.T)
 
 
