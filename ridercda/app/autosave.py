@@ -39,7 +39,9 @@ class Kept:
 class Autosave(QObject):
     """Follows the document; writes whole files only."""
 
-    def __init__(self, document: SessionDocument, root: Path | None = None, parent: QObject | None = None) -> None:
+    def __init__(
+        self, document: SessionDocument, root: Path | None = None, parent: QObject | None = None
+    ) -> None:
         super().__init__(parent)
         self._document = document
         self._root = root or kept_root()
@@ -54,7 +56,7 @@ class Autosave(QObject):
         if not self._timer.isActive():
             self._timer.start()
 
-    def _on_clean_changed(self, clean: bool) -> None:  # noqa: FBT001 - Qt's signal
+    def _on_clean_changed(self, clean: bool) -> None:
         if clean:
             self.forget()
 

@@ -1,19 +1,12 @@
-"""The cautions shown to users, short."""
+"""The cautions of the report, in the user's language."""
 
 from __future__ import annotations
 
 from PySide6.QtCore import QCoreApplication
 
-
-def _tr(text: str) -> str:
-    return QCoreApplication.translate("Cautions", text)
+from ridercda.report.cautions import CAUTIONS
 
 
 def caution_texts() -> tuple[str, ...]:
-    """Return the cautions, one sentence or two each."""
-    return (
-        _tr("Test on closed or quiet roads, obey traffic law and look where you are going: a low head is not a test condition worth a crash."),
-        _tr("Change a position in small steps, and with a qualified fitter or clinician where there is pain or numbness."),
-        _tr("A position that wins seconds may break the event's technical rules: check the organiser's current rules."),
-        _tr("An estimate is not a guarantee."),
-    )
+    """Return the cautions, a sentence or two each."""
+    return tuple(QCoreApplication.translate("Cautions", text) for text in CAUTIONS)

@@ -33,7 +33,7 @@ class EditSession(QUndoCommand):
         """Return a number that steps of one gesture share; -1 where a step stands for itself."""
         return zlib.crc32(self._merge_key.encode()) & 0x7FFFFFFF if self._merge_key else -1
 
-    def mergeWith(self, other: QUndoCommand) -> bool:  # noqa: N802 - Qt's name
+    def mergeWith(self, other: QUndoCommand) -> bool:
         """Take over the end of a later step of the same gesture."""
         if not isinstance(other, EditSession) or other._merge_key != self._merge_key:
             return False

@@ -49,14 +49,14 @@ class Desk:
         self.solver.stop()
 
 
-def build_desk(settings: Settings) -> Desk:
+def build_desk(settings: Settings, reader: Worker | None = None, solver: Worker | None = None) -> Desk:
     """Return a desk with nothing open."""
     theme, units = Theme(), UnitChoice()
     settings.restore_theme(theme)
     settings.restore_units(units)
     document = SessionDocument()
     selection = Selection(document)
-    reader, solver = Worker("ridercda-reader"), Worker("ridercda-solver")
+    reader, solver = reader or Worker("ridercda-reader"), solver or Worker("ridercda-solver")
     shelf = RideShelf(document, reader)
     solving = Solving(document, shelf, solver)
     proposals = Proposals(document, shelf, reader)

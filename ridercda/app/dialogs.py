@@ -4,7 +4,15 @@ from __future__ import annotations
 
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QKeySequence
-from PySide6.QtWidgets import QDialog, QDialogButtonBox, QLabel, QMessageBox, QScrollArea, QVBoxLayout, QWidget
+from PySide6.QtWidgets import (
+    QDialog,
+    QDialogButtonBox,
+    QLabel,
+    QMessageBox,
+    QScrollArea,
+    QVBoxLayout,
+    QWidget,
+)
 
 import ridercda
 from ridercda.app.actions import Action
@@ -46,7 +54,10 @@ class UnitsDialog(_Framed):
         form = Form(desk.theme)
         for kind in CHOOSABLE:
             units = kind_units(kind)
-            options = ((UnitSystem.METRIC.value, units.metric[0]), (UnitSystem.IMPERIAL.value, units.imperial[0]))
+            options = (
+                (UnitSystem.METRIC.value, units.metric[0]),
+                (UnitSystem.IMPERIAL.value, units.imperial[0]),
+            )
             choice = Choice(desk.theme, options)
             choice.set_key(desk.units.units.of(kind).value)
             choice.activated.connect(lambda _, k=kind, c=choice: desk.units.choose_for(k, UnitSystem(c.key)))
@@ -62,7 +73,11 @@ class ColumnsDialog(_Framed):
     def __init__(self, parent: QWidget, desk: Desk, ride_id: str) -> None:
         super().__init__(parent, desk, parent.tr("Columns of {}").format(ride_id))
         self._desk, self._ride = desk, ride_id
-        note = QLabel(self.tr("Write the heading of the column as it stands in the file; a unit may follow in brackets, like Tempo [km/h]."))
+        note = QLabel(
+            self.tr(
+                "Write the heading of the column as it stands in the file; a unit may follow in brackets, like Tempo [km/h]."
+            )
+        )
         note.setWordWrap(True)
         note.setProperty("quiet", True)
         self.column.addWidget(note)
@@ -82,32 +97,32 @@ class ColumnsDialog(_Framed):
         """Push the edit."""
         columns = {channel: text for channel, field in self._fields.items() if (text := field.text().strip())}
         if self._desk.document.edit(
-            self.tr("Set columns of {}").format(self._ride), lambda s: edits.set_ride_columns(s, self._ride, columns)
+            self.tr("Set columns of {}").format(self._ride),
+            lambda s: edits.set_ride_columns(s, self._ride, columns),
         ) or columns == dict(self._desk.session.ride(self._ride).columns):
             super().accept()
 
 
 def show_keys(parent: QWidget, actions: tuple[Action, ...]) -> None:
     """Show shortcuts and what the strip understands."""
+    tr = parent.tr
     strip = (
-        ("← →", parent.tr("previous, next run (Shift: pick several)")),
-        ("[  ]", parent.tr("take the start, the end of the run; ← → then move it by 1 s, Shift by 10 s, Enter lets go")),
-        ("A … Z", parent.tr("say in which setup the picked runs were ridden; the next free letter makes a setup")),
-        ("Ins", parent.tr("new run after the picked one")),
-        ("Del", parent.tr("remove the picked runs")),
-        ("+ − 0", parent.tr("closer, wider, whole day")),
+        ("← →", tr("previous, next run (Shift: pick several)")),
+        (
+            "[  ]",
+            tr("take the start, the end of the run; ← → then move it by 1 s, Shift by 10 s, Enter lets go"),
+        ),
+        ("A … Z", tr("say in which setup the picked runs were ridden; the next free letter makes a setup")),
+        ("Ins", tr("new run after the picked one")),
+        ("Del", tr("remove the picked runs")),
+        ("+ − 0", tr("closer, wider, whole day")),
     )
-    rows = "".join(f"<tr><td style='padding:2px 16px 2px 0'><b>{keys}</b></td><td>{words}</td></tr>" for keys, words in strip)
-    menu = "".join(
-        f"<tr><td style='padding:2px 16px 2px 0'><b>{QKeySequence(a.shortcut).toString(QKeySequence.SequenceFormat.NativeText)}</b></td>"
-        f"<td>{a.text}</td></tr>"
-        for a in actions
-        if a.shortcut
-    )
-    text = f"<h3>{parent.tr('In the day strip')}</h3><table>{rows}</table><h3>{parent.tr('Everywhere')}</h3><table>{menu}</table>"
+    native = QKeySequence.SequenceFormat.NativeText
+    menu = tuple((QKeySequence(a.shortcut).toString(native), a.text) for a in actions if a.shortcut)
+    parts = ((tr("In the day strip"), strip), (tr("Everywhere"), menu))
     dialog = QDialog(parent)
-    dialog.setWindowTitle(parent.tr("Keyboard"))
-    label = QLabel(text)
+    dialog.setWindowTitle(tr("Keyboard"))
+    label = QLabel("".join(f"<h3>{title}</h3>{_key_table(rows)}" for title, rows in parts))
     label.setTextFormat(Qt.TextFormat.RichText)
     label.setWordWrap(True)
     label.setContentsMargins(16, 8, 16, 8)
@@ -120,6 +135,14 @@ def show_keys(parent: QWidget, actions: tuple[Action, ...]) -> None:
     dialog.exec()
 
 
+def _key_table(rows: tuple[tuple[str, str], ...]) -> str:
+    cells = (
+        f"<tr><td style='padding:2px 16px 2px 0'><b>{keys}</b></td><td>{words}</td></tr>"
+        for keys, words in rows
+    )
+    return f"<table>{''.join(cells)}</table>"
+
+
 def show_cautions(parent: QWidget) -> None:
     """Show the cautions."""
     QMessageBox.information(parent, parent.tr("Cautions"), "\n\n".join(caution_texts()))
@@ -128,7 +151,8 @@ def show_cautions(parent: QWidget) -> None:
 def show_about(parent: QWidget) -> None:
     """Say what this is, and under which licences its font comes."""
     text = parent.tr(
-        "RiderCdA {version}\n\nDrag area and rolling resistance from ride files, with honest intervals, and what they are worth on a course.\n\n"
+        "RiderCdA {version}\n\nDrag area and rolling resistance from ride files, with honest intervals, "
+        "and what they are worth on a course.\n\n"
         "MIT licence. The typeface Source Sans Pro is under the SIL Open Font License 1.1."
     ).format(version=ridercda.__version__)
     QMessageBox.about(parent, parent.tr("About RiderCdA"), text)

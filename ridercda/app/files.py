@@ -117,9 +117,13 @@ class SessionFiles(QObject):
     def _with_copies(self, session: Session, folder: Path) -> Session:
         """Copy the session's files into a folder and return the session that names the copies."""
         if (folder / FILE_NAME).exists():
-            raise SessionError(self.tr("is there already; choose another folder or open it"), path=folder / FILE_NAME)
+            raise SessionError(
+                self.tr("is there already; choose another folder or open it"), path=folder / FILE_NAME
+            )
         base = self._desk.document.folder or Path()
-        rides = tuple(replace(ride, file=_copied(base / ride.file, folder, "rides")) for ride in session.rides)
+        rides = tuple(
+            replace(ride, file=_copied(base / ride.file, folder, "rides")) for ride in session.rides
+        )
         courses = tuple(
             replace(course, file=_copied(base / course.file, folder, "courses")) if course.file else course
             for course in session.courses
@@ -148,9 +152,10 @@ class SessionFiles(QObject):
         """Say where a ride's file is now; other missing files beside it are found with it."""
         folder = self._desk.document.folder
         missing = [
-            ride for ride in self._desk.session.rides
+            ride
+            for ride in self._desk.session.rides
             if ride.id != ride_id and not ((folder / ride.file) if folder else Path(ride.file)).is_file()
-        ]  # fmt: skip
+        ]
         places = {ride_id: path}
         for ride in missing:
             if (found := locate(ride, path.parent)) is not None:

@@ -44,7 +44,13 @@ class StateDot(QWidget):
             painter.setPen(self._theme.colour("caution"))
             painter.drawEllipse(centre, size / 2, size / 2)
         elif self._look == "failed":
-            painter.fillRect(round(centre.x() - size / 2), round(centre.y() - size / 2), size, size, self._theme.colour("bad"))
+            painter.fillRect(
+                round(centre.x() - size / 2),
+                round(centre.y() - size / 2),
+                size,
+                size,
+                self._theme.colour("bad"),
+            )
         painter.end()
 
 
@@ -68,12 +74,25 @@ class Header(QWidget):
         line.setContentsMargins(0, 0, 0, 0)
         line.setSpacing(desk.theme.px(8))
         menus.setSizePolicy(QSizePolicy.Policy.Maximum, QSizePolicy.Policy.Preferred)
-        for widget, stretch in ((menus, 0), (self._name, 0), (self._about, 1), (self._bar, 0), (self._stop, 0), (self._dot, 0), (self._state, 0)):
+        for widget, stretch in (
+            (menus, 0),
+            (self._name, 0),
+            (self._about, 1),
+            (self._bar, 0),
+            (self._stop, 0),
+            (self._dot, 0),
+            (self._state, 0),
+        ):
             line.addWidget(widget, stretch)
         for signal in (
-            desk.document.session_changed, desk.shelf.changed, desk.shelf.progressed, desk.solving.changed,
-            desk.units.changed, desk.theme.changed, desk.document.undo_stack.cleanChanged,
-        ):  # fmt: skip
+            desk.document.session_changed,
+            desk.shelf.changed,
+            desk.shelf.progressed,
+            desk.solving.changed,
+            desk.units.changed,
+            desk.theme.changed,
+            desk.document.undo_stack.cleanChanged,
+        ):
             signal.connect(self.refresh)
         self.refresh()
 
@@ -130,7 +149,10 @@ class Header(QWidget):
             State.WAITING: (self.tr("Waiting for rides"), "busy"),
             State.BUSY: (self.tr("Working it out…"), "busy"),
             State.CURRENT: (self.tr("Estimate current"), "current"),
-            State.FAILED: (self.tr("No estimate") if solving.estimate is None else self.tr("Estimate out of date"), "failed"),
+            State.FAILED: (
+                self.tr("No estimate") if solving.estimate is None else self.tr("Estimate out of date"),
+                "failed",
+            ),
         }[solving.state]
         if solving.state is State.CURRENT and solving.seconds:
             words = self.tr("{} · solved in {} s").format(words, f"{solving.seconds:.2f}")

@@ -76,7 +76,9 @@ def laps_of(day: Day, estimate: Estimate) -> Laps | None:
         shifted = elevation - np.nanmean(row)
         shared = np.interp(position, grid[counted], profile[counted])
         order = np.argsort(position, kind="stable")
-        traces.append(LapTrace(run_id, lap, time[order], position[order], shifted[order], (shifted - shared)[order]))
+        traces.append(
+            LapTrace(run_id, lap, time[order], position[order], shifted[order], (shifted - shared)[order])
+        )
     return Laps(grid[counted], profile[counted], tuple(traces))
 
 

@@ -84,6 +84,8 @@ class Menus(QMenuBar):
         self.recent.clear()
         folders = self._window.desk.settings.recent
         for folder in folders:
-            self.recent.addAction(folder.name, lambda f=folder: self._window.open_session(f)).setToolTip(str(folder))
+            self.recent.addAction(folder.name, lambda f=folder: self._window.open_session(f)).setToolTip(
+                str(folder)
+            )
         if not folders:
             self.recent.addAction(self.tr("none yet")).setEnabled(False)

@@ -54,8 +54,16 @@ class PaletteModel(QAbstractListModel):
     def narrow(self, words: str) -> None:
         """Show what matches."""
         self.beginResetModel()
-        found = [(score, action) for action in self._all if (score := matches(words, self._said(action))) is not None]
-        self._shown = tuple(action for _, action in sorted(found, key=lambda pair: pair[0])) if words.strip() else self._all
+        found = [
+            (score, action)
+            for action in self._all
+            if (score := matches(words, self._said(action))) is not None
+        ]
+        self._shown = (
+            tuple(action for _, action in sorted(found, key=lambda pair: pair[0]))
+            if words.strip()
+            else self._all
+        )
         self.endResetModel()
 
     def _said(self, action: Action) -> str:
@@ -127,7 +135,9 @@ class Palette(QDialog):
         self._list.clicked.connect(self._on_chosen)
         self.resize(theme.px(460), theme.px(360))
         corner = window.mapToGlobal(window.rect().center())
-        self.move(corner.x() - self.width() // 2, window.mapToGlobal(window.rect().topLeft()).y() + theme.px(80))
+        self.move(
+            corner.x() - self.width() // 2, window.mapToGlobal(window.rect().topLeft()).y() + theme.px(80)
+        )
 
     def _on_field_changed(self, words: str) -> None:
         self._model.narrow(words)

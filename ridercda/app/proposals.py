@@ -17,7 +17,9 @@ class Proposals(QObject):
 
     changed = Signal()
 
-    def __init__(self, document: SessionDocument, shelf: RideShelf, worker: Worker, parent: QObject | None = None) -> None:
+    def __init__(
+        self, document: SessionDocument, shelf: RideShelf, worker: Worker, parent: QObject | None = None
+    ) -> None:
         super().__init__(parent)
         self._document, self._shelf, self._worker = document, shelf, worker
         self._found: dict[str, tuple[Ride, tuple[Run, ...]]] = {}
@@ -57,7 +59,9 @@ class Proposals(QObject):
                 continue
             job = self._worker.request(tasks.propose_runs, ride_id, ride, session)
             self._jobs[ride_id] = job
-            job.finished.connect(lambda runs, key=ride_id, array=ride: self._on_job_finished(key, array, runs))
+            job.finished.connect(
+                lambda runs, key=ride_id, array=ride: self._on_job_finished(key, array, runs)
+            )
             job.failed.connect(lambda _, key=ride_id, array=ride: self._on_job_finished(key, array, ()))
             job.faulted.connect(lambda _, key=ride_id, array=ride: self._on_job_finished(key, array, ()))
         self.changed.emit()

@@ -19,9 +19,7 @@ from ridercda.units import (
     to_display,
 )
 
-CHOOSABLE = tuple(
-    kind for kind in Kind if kind_units(kind).metric[0] != kind_units(kind).imperial[0]
-)
+CHOOSABLE = tuple(kind for kind in Kind if kind_units(kind).metric[0] != kind_units(kind).imperial[0])
 """The quantities for which the two systems differ."""
 
 

@@ -32,7 +32,9 @@ class RunEdits(QObject):
 
         def change(before: Session) -> Session:
             with_setup = before if setup else with_new_setup(before)
-            return edits.add_runs(with_setup, [Run(run_id, ride, setup or with_setup.setups[0].id, start, end)])
+            return edits.add_runs(
+                with_setup, [Run(run_id, ride, setup or with_setup.setups[0].id, start, end)]
+            )
 
         if self._desk.document.edit(self.tr("New run"), change):
             self._desk.selection.pick_run(run_id)

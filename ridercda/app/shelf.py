@@ -73,7 +73,9 @@ class RideShelf(QObject):
         for ride_id, job in list(self._jobs.items()):
             job.cancel()
             item = self._items[ride_id]
-            self._items[ride_id] = ShelfItem(item.entry, Shelved.FAILED, item.ride, self.tr("Reading was stopped."))
+            self._items[ride_id] = ShelfItem(
+                item.entry, Shelved.FAILED, item.ride, self.tr("Reading was stopped.")
+            )
         self._jobs.clear()
         self.changed.emit()
 
@@ -138,8 +140,12 @@ class RideShelf(QObject):
     def _on_job_finished(self, entry: RideEntry, ride: Ride) -> None:
         if self._is_current(entry):
             self._jobs.pop(entry.id, None)
-            self._items[entry.id] = ShelfItem(self._items[entry.id].entry, Shelved.READY, ride)
-            self.changed.emit()
+            self.put(entry.id, ride)
+
+    def put(self, ride_id: str, ride: Ride) -> None:
+        """Take a ride's arrays."""
+        self._items[ride_id] = ShelfItem(self._document.session.ride(ride_id), Shelved.READY, ride)
+        self.changed.emit()
 
     def _on_job_failed(self, entry: RideEntry, message: str) -> None:
         if self._is_current(entry):
@@ -152,6 +158,10 @@ class RideShelf(QObject):
 def _reading_key(entry: RideEntry) -> tuple[object, ...]:
     """Return what a ride's arrays depend on."""
     return (
-        entry.file, entry.start, tuple(sorted(entry.columns.items())), entry.wheel_circumference,
-        entry.power_channel, entry.repairs,
-    )  # fmt: skip
+        entry.file,
+        entry.start,
+        tuple(sorted(entry.columns.items())),
+        entry.wheel_circumference,
+        entry.power_channel,
+        entry.repairs,
+    )

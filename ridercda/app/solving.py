@@ -129,8 +129,12 @@ class Solving(QObject):
             return
         self._job, self._asked = None, None
         self._solved = key
-        self.estimate = estimate
         self.seconds = time.perf_counter() - self._began
+        self.put(estimate)
+
+    def put(self, estimate: Estimate) -> None:
+        """Take the estimate of the session as it stands."""
+        self.estimate = estimate
         self._tell(State.CURRENT)
 
     def _on_job_failed(self, key: object, message: str) -> None:
@@ -149,6 +153,8 @@ class Solving(QObject):
 
 def _solve_key(session: Session) -> Session:
     """Return the session without what no estimate depends on."""
-    setups = tuple(replace(s, name="", notes="", photos=(), letter="", power_cost=None) for s in session.setups)
+    setups = tuple(
+        replace(s, name="", notes="", photos=(), letter="", power_cost=None) for s in session.setups
+    )
     runs = tuple(replace(run, note="") for run in session.runs)
     return replace(session, name="", setups=setups, runs=runs, courses=())

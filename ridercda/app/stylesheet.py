@@ -49,7 +49,8 @@ QPushButton[page="true"]:focus { color: $accent; }
 QPushButton[page="true"]:disabled { color: $disabled; }
 QPushButton[row="true"] { color: $ink; text-align: left; border-radius: ${s6}px; padding: ${s8}px ${s12}px; }
 QPushButton[row="true"]:hover { background: $hover; }
-QToolButton { background: transparent; border: 1px solid transparent; border-radius: ${s4}px; color: $quiet; padding: ${s2}px ${s6}px; }
+QToolButton { background: transparent; border: 1px solid transparent; border-radius: ${s4}px; color: $quiet;
+  padding: ${s2}px ${s6}px; }
 QToolButton:hover { background: $hover; color: $ink; }
 QToolButton:focus { border: 1px solid $accent; }
 QToolButton::menu-indicator { image: none; }

@@ -21,7 +21,10 @@ def read_ride(watch: Watch, path: Path, entry: RideEntry, utc_offset: float | No
     from ridercda.rides.reader import read_ride as read
 
     options = ReadOptions.with_columns(
-        entry.columns, start=entry.start, power_channel=entry.power_channel, wheel_circumference=entry.wheel_circumference
+        entry.columns,
+        start=entry.start,
+        power_channel=entry.power_channel,
+        wheel_circumference=entry.wheel_circumference,
     )
     return read(path, options, watch)
 

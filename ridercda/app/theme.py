@@ -49,7 +49,9 @@ class Theme(QObject):
         super().__init__(parent)
         self._mode = mode
         self._zoom = zoom
-        self._system_size = float(QFontInfo(QFontDatabase.systemFont(QFontDatabase.SystemFont.GeneralFont)).pixelSize())
+        self._system_size = float(
+            QFontInfo(QFontDatabase.systemFont(QFontDatabase.SystemFont.GeneralFont)).pixelSize()
+        )
         QGuiApplication.styleHints().colorSchemeChanged.connect(self._on_system_scheme_changed)
 
     @property

@@ -133,7 +133,9 @@ class MainWindow(QMainWindow):
         if self._may_leave() and not self.files.open(path):
             self._stack.setCurrentWidget(self.workbench if self.desk.document.is_open else self.start)
             if not self.desk.document.is_open:
-                QMessageBox.warning(self, self.tr("Not opened"), self.tr("This session could not be opened: {}").format(path))
+                QMessageBox.warning(
+                    self, self.tr("Not opened"), self.tr("This session could not be opened: {}").format(path)
+                )
 
     def open_sample(self, sample: Sample) -> None:
         """Open a copy of a sample."""
@@ -152,7 +154,10 @@ class MainWindow(QMainWindow):
         """Ask which ride files to add."""
         patterns = " ".join(f"*{suffix}" for suffix in RIDE_SUFFIXES)
         names, _ = QFileDialog.getOpenFileNames(
-            self, self.tr("Add ride files"), str(Path.home()), self.tr("Ride files ({});;All files (*)").format(patterns)
+            self,
+            self.tr("Add ride files"),
+            str(Path.home()),
+            self.tr("Ride files ({});;All files (*)").format(patterns),
         )
         self.files.add_rides(map(Path, names))
 
@@ -164,7 +169,9 @@ class MainWindow(QMainWindow):
         """Ask for a folder and save there."""
         user_folder().mkdir(parents=True, exist_ok=True)
         name, _ = QFileDialog.getSaveFileName(
-            self, self.tr("Save session as a folder"), str(user_folder() / (self.desk.session.name or "session"))
+            self,
+            self.tr("Save session as a folder"),
+            str(user_folder() / (self.desk.session.name or "session")),
         )
         return bool(name) and self.files.save_as(Path(name))
 
@@ -179,10 +186,11 @@ class MainWindow(QMainWindow):
             return True
         buttons = QMessageBox.StandardButton
         answer = QMessageBox.question(
-            self, self.tr("Save changes?"),
+            self,
+            self.tr("Save changes?"),
             self.tr("“{}” has changes that are not saved.").format(self.desk.session.name),
             buttons.Save | buttons.Discard | buttons.Cancel,
-        )  # fmt: skip
+        )
         if answer == buttons.Save:
             return self.save()
         if answer == buttons.Discard:

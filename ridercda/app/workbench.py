@@ -152,7 +152,12 @@ class Workbench(QWidget):
 
     def eventFilter(self, watched: QObject, event: QEvent) -> bool:
         """Escape closes the drawer."""
-        if self._is_drawer and isinstance(event, QKeyEvent) and event.type() is QEvent.Type.KeyPress and event.key() == Qt.Key.Key_Escape:
+        if (
+            self._is_drawer
+            and isinstance(event, QKeyEvent)
+            and event.type() is QEvent.Type.KeyPress
+            and event.key() == Qt.Key.Key_Escape
+        ):
             self._drawer_open = False
             self._lay_out_side()
             return True

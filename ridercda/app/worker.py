@@ -12,7 +12,7 @@ import multiprocessing
 import queue
 import threading
 from multiprocessing.connection import Connection
-from typing import Any
+from typing import Any, cast
 
 from PySide6.QtCore import QObject, Qt, Signal
 
@@ -69,14 +69,18 @@ class Worker(QObject):
         context = multiprocessing.get_context("spawn")
         self._home, far_home = context.Pipe()
         far_stops, self._stops = context.Pipe(duplex=False)
-        self._process = context.Process(target=serve, args=(far_home, far_stops), name=self._name, daemon=True)
+        self._process = context.Process(
+            target=serve, args=(far_home, far_stops), name=self._name, daemon=True
+        )
         self._process.start()
         far_home.close()
         far_stops.close()
         self._outbox = queue.SimpleQueue()
         generation, home, outbox = self._generation, self._home, self._outbox
         self._threads = [
-            threading.Thread(target=self._listen, args=(generation, home), daemon=True, name=f"{self._name}-in"),
+            threading.Thread(
+                target=self._listen, args=(generation, home), daemon=True, name=f"{self._name}-in"
+            ),
             threading.Thread(target=_post, args=(outbox, home), daemon=True, name=f"{self._name}-out"),
         ]
         for thread in self._threads:
@@ -132,7 +136,7 @@ class Worker(QObject):
         if message is None:
             self._on_death()
             return
-        number, what, content = message  # type: ignore[misc]
+        number, what, content = cast("tuple[int, str, Any]", message)
         job = self._jobs.get(number)
         if job is None:
             return
@@ -152,7 +156,9 @@ class Worker(QObject):
         jobs = tuple(self._jobs.values())
         self.stop_quietly()
         for job in jobs:
-            job.failed.emit(self.tr("The background work stopped unexpectedly; it starts again with the next change."))
+            job.failed.emit(
+                self.tr("The background work stopped unexpectedly; it starts again with the next change.")
+            )
         self.stopped_by_itself.emit()
 
     def stop_quietly(self) -> None:

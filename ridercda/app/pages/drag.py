@@ -15,14 +15,14 @@ from ridercda.app.theme import Type
 from ridercda.app.widgets.card import Card, ChartCard, rule
 from ridercda.app.widgets.card_row import CardRow
 from ridercda.app.widgets.ellipse_chart import EllipseChart
+from ridercda.app.widgets.flags import set_flag
 from ridercda.app.widgets.interval_chart import IntervalChart
 from ridercda.app.widgets.links import link
 from ridercda.app.widgets.notes import Notes
 from ridercda.app.widgets.run_chart import RunChart
 from ridercda.app.widgets.share_chart import ShareChart
-from ridercda.app.widgets.flags import set_flag
 from ridercda.app.widgets.table import TableModel, TableView
-from ridercda.drag.estimate import Estimate
+from ridercda.drag.estimate import Estimate, NextStep
 
 
 class DragPage(Page):
@@ -113,19 +113,27 @@ class DragPage(Page):
         if not session.rides:
             return Blank(
                 self.tr("No rides yet"),
-                self.tr("Add the ride files of the test day. Each run of a setup then becomes a block in the day strip."),
-                "ride.add", self.tr("Add ride files…"),
-            )  # fmt: skip
+                self.tr(
+                    "Add the ride files of the test day. Each run of a setup then becomes a block in the day strip."
+                ),
+                "ride.add",
+                self.tr("Add ride files…"),
+            )
         if not session.runs:
             return Blank(
                 self.tr("No runs yet"),
                 self.tr("Accept the proposed runs, or drag over the day strip where a setup was ridden."),
-                "page.runs", self.tr("Go to Runs"),
-            )  # fmt: skip
+                "page.runs",
+                self.tr("Go to Runs"),
+            )
         if solving.state is State.WAITING:
-            return Blank(self.tr("Reading the rides…"), self.tr("Figures follow as soon as the rides are read."))
+            return Blank(
+                self.tr("Reading the rides…"), self.tr("Figures follow as soon as the rides are read.")
+            )
         if solving.state is State.FAILED:
-            return Blank(self.tr("No figure from these runs"), solving.message, "solve.again", self.tr("Try again"))
+            return Blank(
+                self.tr("No figure from these runs"), solving.message, "solve.again", self.tr("Try again")
+            )
         return Blank(self.tr("Working out the drag…"), self.tr("The first figures take a moment."))
 
     def refresh(self) -> None:
@@ -148,10 +156,19 @@ class DragPage(Page):
         self._intervals.show_picture(drag_view.interval_picture(self.desk, estimate, baseline.id))
         dots, levels = drag_view.run_dots(self.desk, estimate)
         self._runs_chart.show_runs(dots, levels, self.tr("CdA of each run [m²]"))
-        self._region_chart.show_regions(drag_view.regions(self.desk, estimate), self.tr("CdA [m²]"), self.tr("Crr"))
+        self._region_chart.show_regions(
+            drag_view.regions(self.desk, estimate), self.tr("CdA [m²]"), self.tr("Crr")
+        )
         self._show_limits(estimate, baseline.id)
         self._show_diagnostics(estimate)
-        for card in (self._answer, self._runs_card, self._region_card, self._limits_card, self._trend_card, self._yaw_card):
+        for card in (
+            self._answer,
+            self._runs_card,
+            self._region_card,
+            self._limits_card,
+            self._trend_card,
+            self._yaw_card,
+        ):
             card.refresh_table()
 
     def _show_limits(self, estimate: Estimate, baseline: str) -> None:
@@ -162,10 +179,16 @@ class DragPage(Page):
         self._limits_chart.show_shares(drag_view.shares(pair))
         title = self.tr("What limits it")
         if pair is not None and pair.setup in badges and pair.against in badges:
-            title = self.tr("What limits {} against {}").format(badges[pair.setup].letter, badges[pair.against].letter)
+            title = self.tr("What limits {} against {}").format(
+                badges[pair.setup].letter, badges[pair.against].letter
+            )
         self._limits_card.set_title(title)
-        steps = [s for s in estimate.next_steps if pair is not None and s.setup == pair.setup and s.against == pair.against]
-        self._step.show_text((steps or list(estimate.next_steps) or [None])[0])
+        steps = [
+            s
+            for s in estimate.next_steps
+            if pair is not None and s.setup == pair.setup and s.against == pair.against
+        ]
+        self._step.show_step(next(iter(steps or estimate.next_steps), None))
 
     def _show_diagnostics(self, estimate: Estimate) -> None:
         columns, rows = drag_view.influence(self.desk, estimate)
@@ -192,9 +215,9 @@ class _NextStep(QWidget):
         layout.addWidget(self._words)
         layout.addStretch(1)
 
-    def show_text(self, step: object) -> None:
+    def show_step(self, step: NextStep | None) -> None:
         """Show a step, or say that there is none."""
         self._head.setFont(self._theme.font(Type.AXIS, strong=True))
         self._words.setFont(self._theme.font())
-        text = getattr(step, "text", "")
-        self._words.setText(text or self.tr("Nothing cheap would tighten this: the interval is set by the day."))
+        nothing = self.tr("Nothing cheap would tighten this: the interval is set by the day.")
+        self._words.setText(step.text if step else nothing)

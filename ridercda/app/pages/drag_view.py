@@ -40,7 +40,16 @@ def watts_per_area(session: Session, estimate: Estimate) -> float | None:
     if session.power_meter.location is MeterLocation.HUB:
         efficiency = 1.0
     with_drag, without = (
-        float(road_power(estimate.reference_speed, mass=80.0, cda=cda, crr=0.0, density=estimate.air_density, efficiency=efficiency).meter)
+        float(
+            road_power(
+                estimate.reference_speed,
+                mass=80.0,
+                cda=cda,
+                crr=0.0,
+                density=estimate.air_density,
+                efficiency=efficiency,
+            ).meter
+        )
         for cda in (1.0, 0.0)
     )
     return with_drag - without
@@ -68,10 +77,17 @@ def interval_picture(desk: Desk, estimate: Estimate, baseline: str) -> IntervalP
             )
         rows.append(
             IntervalRow(
-                pair.setup, desk.theme.chip(badges[pair.setup].index), badges[pair.setup].letter, verdict_words(pair),
-                pair.cda.value if pair.cda else None, pair.cda.interval if pair.cda else None, singles, tip or pair.reason,
-                picked=pair.setup == desk.selection.setup, note=badges[pair.setup].name,
-            )  # fmt: skip
+                pair.setup,
+                desk.theme.chip(badges[pair.setup].index),
+                badges[pair.setup].letter,
+                verdict_words(pair),
+                pair.cda.value if pair.cda else None,
+                pair.cda.interval if pair.cda else None,
+                singles,
+                tip or pair.reason,
+                picked=pair.setup == desk.selection.setup,
+                note=badges[pair.setup].name,
+            )
         )
     factor = watts_per_area(session, estimate)
     second = None
@@ -100,11 +116,23 @@ def run_dots(desk: Desk, estimate: Estimate) -> tuple[tuple[RunDot, ...], tuple[
             id=run.id, letter=badge.letter, value=value_text(run.cda), within=plus_minus(run.cda)
         )
         dots.append(
-            RunDot(run.id, run.id, desk.theme.chip(badge.index), badge.letter, moment, run.cda.value, run.cda.interval,
-                   run.excluded, run.id in desk.selection.runs, tip)  # fmt: skip
+            RunDot(
+                run.id,
+                run.id,
+                desk.theme.chip(badge.index),
+                badge.letter,
+                moment,
+                run.cda.value,
+                run.cda.interval,
+                run.excluded,
+                run.id in desk.selection.runs,
+                tip,
+            )
         )
     levels = tuple(
-        Level(desk.theme.chip(badges[s.id].index), s.cda.value) for s in estimate.setups if s.cda and s.id in badges
+        Level(desk.theme.chip(badges[s.id].index), s.cda.value)
+        for s in estimate.setups
+        if s.cda and s.id in badges
     )
     return tuple(sorted(dots, key=lambda dot: dot.moment)), levels
 
@@ -114,7 +142,9 @@ def regions(desk: Desk, estimate: Estimate) -> tuple[Region, ...]:
     session, badges = desk.session, desk.badges()
     baseline = session.baseline
     wanted = [baseline.id] if baseline else []
-    picked = desk.selection.setup or next((p.setup for p in against_baseline(estimate, baseline.id if baseline else "")), "")
+    picked = desk.selection.setup or next(
+        (p.setup for p in against_baseline(estimate, baseline.id if baseline else "")), ""
+    )
     if picked and picked not in wanted:
         wanted.append(picked)
     places = {name: place for place, name in enumerate(estimate.parameters)}
@@ -138,7 +168,14 @@ def regions(desk: Desk, estimate: Estimate) -> tuple[Region, ...]:
             name=badge.name, share=round(100 * estimate.confidence)
         )
         result.append(
-            Region(setup_id, name, desk.theme.chip(badge.index), badge.letter, centre, ellipse(centre, covariance, radius))
+            Region(
+                setup_id,
+                name,
+                desk.theme.chip(badge.index),
+                badge.letter,
+                centre,
+                ellipse(centre, covariance, radius),
+            )
         )
     return tuple(result)
 
@@ -180,33 +217,37 @@ class InfluenceRow:
     excluded: str
 
 
-def influence(desk: Desk, estimate: Estimate) -> tuple[tuple[Column[InfluenceRow], ...], tuple[InfluenceRow, ...]]:
+def influence(
+    desk: Desk, estimate: Estimate
+) -> tuple[tuple[Column[InfluenceRow], ...], tuple[InfluenceRow, ...]]:
     """Return columns and rows of the table of influence."""
     badges = desk.badges()
     baseline = desk.session.baseline
     others = [s.id for s in estimate.setups if s.id in badges and (baseline is None or s.id != baseline.id)]
     columns: list[Column[InfluenceRow]] = [
-        Column(_tr("Run"), lambda row: row.run, raw=lambda row: _run_order(row.run), chip=lambda row: row.badge),
+        Column(
+            _tr("Run"), lambda row: row.run, raw=lambda row: _run_order(row.run), chip=lambda row: row.badge
+        ),
         Column(
             _tr("against repeats [σ]"),
             lambda row: "–" if row.against_repeats is None else plain(row.against_repeats, 1, signed=True),
             raw=lambda row: row.against_repeats,
         ),
     ]
-    for setup_id in others:
-        columns.append(
-            Column(
-                _tr("moves {} by [m²]").format(badges[setup_id].letter),
-                lambda row, key=setup_id: plain(row.moves[key], 4, signed=True) if key in row.moves else "–",
-                raw=lambda row, key=setup_id: row.moves.get(key),
-            )
-        )
+    columns += [_moves_column(setup_id, badges[setup_id].letter) for setup_id in others]
     rows = tuple(
         InfluenceRow(run.id, badges[run.setup], run.influence, run.against_repeats, run.excluded)
         for run in estimate.runs
         if run.setup in badges
     )
     return tuple(columns), rows
+
+
+def _moves_column(setup_id: str, letter: str) -> Column[InfluenceRow]:
+    def text(row: InfluenceRow) -> str:
+        return plain(row.moves[setup_id], 4, signed=True) if setup_id in row.moves else "–"
+
+    return Column(_tr("moves {} by [m²]").format(letter), text, raw=lambda row: row.moves.get(setup_id))
 
 
 def _run_order(run: str) -> float | str:
@@ -220,7 +261,9 @@ def trend_chart(theme: Theme) -> ScatterChart:
 
 def show_speed_trend(desk: Desk, estimate: Estimate, chart: ScatterChart) -> None:
     """Show each run's distance from its setup against its speed."""
-    points = _points(desk, estimate, lambda run: None if run.speed is None else desk.units.shown(run.speed, Kind.SPEED))
+    points = _points(
+        desk, estimate, lambda run: None if run.speed is None else desk.units.shown(run.speed, Kind.SPEED)
+    )
     across = _tr("Mean speed [{}]").format(desk.units.symbol(Kind.SPEED))
     chart.show_points(points, across, _tr("CdA of the run less that of its setup [m²]"))
 
@@ -228,13 +271,17 @@ def show_speed_trend(desk: Desk, estimate: Estimate, chart: ScatterChart) -> Non
 def show_wind_trend(desk: Desk, estimate: Estimate, chart: ScatterChart) -> None:
     """Show each run's distance from its setup against the wind it met."""
     points = _points(
-        desk, estimate, lambda run: None if run.wind_speed is None else desk.units.shown(run.wind_speed, Kind.WIND_SPEED)
+        desk,
+        estimate,
+        lambda run: None if run.wind_speed is None else desk.units.shown(run.wind_speed, Kind.WIND_SPEED),
     )
     across = _tr("Wind at the rider [{}]").format(desk.units.symbol(Kind.WIND_SPEED))
     chart.show_points(points, across, _tr("CdA of the run less that of its setup [m²]"))
 
 
-def _points(desk: Desk, estimate: Estimate, across: Callable[[RunEstimate], float | None]) -> tuple[Point, ...]:
+def _points(
+    desk: Desk, estimate: Estimate, across: Callable[[RunEstimate], float | None]
+) -> tuple[Point, ...]:
     badges = desk.badges()
     levels = {s.id: s.cda.value for s in estimate.setups if s.cda}
     points = []
@@ -246,8 +293,16 @@ def _points(desk: Desk, estimate: Estimate, across: Callable[[RunEstimate], floa
         level = levels[run.setup]
         low, high = run.cda.interval
         points.append(
-            Point(run.id, desk.theme.chip(badge.index), badge.letter, x, run.cda.value - level, (low - level, high - level),
-                  run.id in desk.selection.runs, _tr("Run {}").format(run.id))  # fmt: skip
+            Point(
+                run.id,
+                desk.theme.chip(badge.index),
+                badge.letter,
+                x,
+                run.cda.value - level,
+                (low - level, high - level),
+                run.id in desk.selection.runs,
+                _tr("Run {}").format(run.id),
+            )
         )
     return tuple(points)
 

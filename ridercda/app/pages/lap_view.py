@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+
 import numpy as np
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
@@ -21,10 +22,17 @@ class LapOverlay(QWidget):
         super().__init__()
         self._desk = desk
         self._charts = (LineChart(desk.theme), LineChart(desk.theme))
-        titles = (self.tr("Every lap's virtual elevation, and the profile they share"), self.tr("What is left of each lap"))
+        titles = (
+            self.tr("Every lap's virtual elevation, and the profile they share"),
+            self.tr("What is left of each lap"),
+        )
         self._row = CardRow(desk.theme)
-        self._cards = tuple(ChartCard(desk.theme, title, chart) for title, chart in zip(titles, self._charts, strict=True))
-        for card, title, stretch in zip(self._cards, (self.tr("Virtual elevation"), self.tr("Residual")), (3, 2), strict=True):
+        self._cards = tuple(
+            ChartCard(desk.theme, title, chart) for title, chart in zip(titles, self._charts, strict=True)
+        )
+        for card, title, stretch in zip(
+            self._cards, (self.tr("Virtual elevation"), self.tr("Residual")), (3, 2), strict=True
+        ):
             self._row.add(card, title, stretch)
         layout = QVBoxLayout(self)
         layout.setContentsMargins(0, 0, 0, 0)
@@ -62,9 +70,16 @@ class LapOverlay(QWidget):
         upper.sort(key=lambda curve: curve.width)
         lower.sort(key=lambda curve: curve.width)
         ink = self._desk.theme.roles.ink
-        shared = Curve("profile", laps.position * along, laps.profile * along, ink, 2.4, self.tr("shared profile"))
+        shared = Curve(
+            "profile", laps.position * along, laps.profile * along, ink, 2.4, self.tr("shared profile")
+        )
         self._charts[0].show_curves((*upper, shared), across, height)
-        self._charts[1].show_curves(tuple(lower), across, self.tr("Lap less profile [{}]").format(units.symbol(Kind.HEIGHT)), with_zero=True)
+        self._charts[1].show_curves(
+            tuple(lower),
+            across,
+            self.tr("Lap less profile [{}]").format(units.symbol(Kind.HEIGHT)),
+            with_zero=True,
+        )
         for card in self._cards:
             card.refresh_table()
 
@@ -74,7 +89,10 @@ class LapOverlay(QWidget):
             return
         position = x / self._desk.units.scale(Kind.HEIGHT)
         run_id = self._desk.selection.run
-        trace = next((t for t in self._laps.traces if t.run == run_id), self._laps.traces[0] if self._laps.traces else None)
+        trace = next(
+            (t for t in self._laps.traces if t.run == run_id),
+            self._laps.traces[0] if self._laps.traces else None,
+        )
         if trace is None or not trace.position.size:
             return
         index = int(np.nanargmin(np.abs(trace.position - position)))
@@ -87,7 +105,11 @@ class LapOverlay(QWidget):
         if moment is not None and laps is not None:
             rides = {run.id: run.ride for run in self._desk.session.runs}
             for trace in laps.traces:
-                if rides.get(trace.run) == moment[0] and trace.time.size and trace.time[0] <= moment[1] <= trace.time[-1]:
+                if (
+                    rides.get(trace.run) == moment[0]
+                    and trace.time.size
+                    and trace.time[0] <= moment[1] <= trace.time[-1]
+                ):
                     place = float(np.interp(moment[1], trace.time, trace.position))
                     position = place * self._desk.units.scale(Kind.HEIGHT)
                     break

@@ -45,9 +45,13 @@ class Page(QWidget):
         self._soon = QTimer(self, singleShot=True, interval=0)
         self._soon.timeout.connect(self._on_soon)
         self.follow(
-            desk.document.session_changed, desk.shelf.changed, desk.solving.changed, desk.selection.changed,
-            desk.units.changed, desk.theme.changed,
-        )  # fmt: skip
+            desk.document.session_changed,
+            desk.shelf.changed,
+            desk.solving.changed,
+            desk.selection.changed,
+            desk.units.changed,
+            desk.theme.changed,
+        )
 
     def follow(self, *signals: object) -> None:
         """Refresh after each of these signals, once for all that come together."""

@@ -14,7 +14,7 @@ from ridercda.app.pages.faults import FaultTable
 from ridercda.app.pages.page import Blank, Page
 from ridercda.app.pages.venue_view import VenueMap, map_tracks
 from ridercda.app.run_edits import RunEdits
-from ridercda.app.shelf import Shelved, ShelfItem
+from ridercda.app.shelf import ShelfItem, Shelved
 from ridercda.app.theme import Type
 from ridercda.app.widgets.card import Card, ChartCard
 from ridercda.app.widgets.links import link, link_line
@@ -80,9 +80,19 @@ class RidesPage(Page):
     def _columns(self) -> tuple[Column[RideRow], ...]:
         return (
             Column(self.tr("Ride"), lambda r: r.id),
-            Column(self.tr("Starts"), lambda r: "–" if r.start is None else clock(r.start), raw=lambda r: r.start),
-            Column(self.tr("Length"), lambda r: "–" if r.length is None else duration(r.length), raw=lambda r: r.length),
-            Column(self.tr("Every"), lambda r: "–" if r.every is None else f"{r.every:g}\u00a0s", raw=lambda r: r.every),
+            Column(
+                self.tr("Starts"), lambda r: "–" if r.start is None else clock(r.start), raw=lambda r: r.start
+            ),
+            Column(
+                self.tr("Length"),
+                lambda r: "–" if r.length is None else duration(r.length),
+                raw=lambda r: r.length,
+            ),
+            Column(
+                self.tr("Every"),
+                lambda r: "–" if r.every is None else f"{r.every:g}\u00a0s",
+                raw=lambda r: r.every,
+            ),
             Column(self.tr("Faults"), lambda r: str(r.faults), raw=lambda r: float(r.faults)),
             Column(self.tr("State"), lambda r: r.state),
             Column(self.tr("File"), lambda r: Path(r.file).name, tip=lambda r: r.file),
@@ -95,9 +105,12 @@ class RidesPage(Page):
             return None
         return Blank(
             self.tr("Add the rides of the test day"),
-            self.tr("Drop ride files anywhere in the window: FIT, TCX, GPX or delimited text, one or many at once."),
-            "ride.add", self.tr("Add ride files…"),
-        )  # fmt: skip
+            self.tr(
+                "Drop ride files anywhere in the window: FIT, TCX, GPX or delimited text, one or many at once."
+            ),
+            "ride.add",
+            self.tr("Add ride files…"),
+        )
 
     def refresh(self) -> None:
         """Show rides, faults and map."""
@@ -124,16 +137,27 @@ class RidesPage(Page):
     def _row(self, item: ShelfItem) -> RideRow:
         ride = item.ride
         words = {
-            Shelved.READING: self.tr("reading"), Shelved.READY: self.tr("read"),
-            Shelved.MISSING: self.tr("file missing"), Shelved.FAILED: self.tr("not read"),
-        }  # fmt: skip
+            Shelved.READING: self.tr("reading"),
+            Shelved.READY: self.tr("read"),
+            Shelved.MISSING: self.tr("file missing"),
+            Shelved.FAILED: self.tr("not read"),
+        }
         if ride is None or not ride.time.size:
             return RideRow(item.entry.id, item.entry.file, None, None, None, "", 0, words[item.state])
         start = item.entry.start or ride.start
         second = start.hour * 3600 + start.minute * 60 + start.second if start else None
         every = float(np.median(np.diff(ride.time))) if ride.time.size > 1 else None
         names = ", ".join(name.replace("_", " ") for name in ride.channels if ride.has(name))
-        return RideRow(item.entry.id, item.entry.file, second, ride.duration, every, names, len(ride.faults), words[item.state])
+        return RideRow(
+            item.entry.id,
+            item.entry.file,
+            second,
+            ride.duration,
+            every,
+            names,
+            len(ride.faults),
+            words[item.state],
+        )
 
     def _on_find_clicked(self) -> None:
         ride_id = self.desk.selection.ride
@@ -144,9 +168,12 @@ class RidesPage(Page):
     def _on_remove_clicked(self) -> None:
         ride_id = self.desk.selection.ride
         self.desk.document.edit(
-            self.tr("Remove ride {} and its runs").format(ride_id), lambda s: edits.remove_ride_with_runs(s, ride_id)
+            self.tr("Remove ride {} and its runs").format(ride_id),
+            lambda s: edits.remove_ride_with_runs(s, ride_id),
         )
 
 
 def _is_text(item: ShelfItem) -> bool:
-    return (item.ride is not None and item.ride.source == "text") or item.entry.file.lower().endswith((".csv", ".txt", ".tsv", ".csv.gz"))
+    return (item.ride is not None and item.ride.source == "text") or item.entry.file.lower().endswith(
+        (".csv", ".txt", ".tsv", ".csv.gz")
+    )

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 from PySide6.QtWidgets import QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
@@ -43,7 +44,9 @@ class RunsPage(Page):
     def __init__(self, desk: Desk, runs: RunEdits) -> None:
         super().__init__(desk, runs)
         px = self.theme.px
-        self._model = TableModel[RunRow](self._columns(), key=lambda row: row.run.id, quiet=lambda row: bool(row.run.excluded))
+        self._model = TableModel[RunRow](
+            self._columns(), key=lambda row: row.run.id, quiet=lambda row: bool(row.run.excluded)
+        )
         self._table = TableView(self.theme, self._model)
         self._table.keys_picked.connect(desk.selection.pick_runs)
         self._card = Card(self.theme, self.tr("Runs of the day"))
@@ -79,35 +82,54 @@ class RunsPage(Page):
         self.follow(desk.proposals.changed, desk.laps.changed)
 
     def _columns(self) -> tuple[Column[RunRow], ...]:
+        return (
+            Column(
+                self.tr("Run"), _name, raw=_order, chip=lambda row: row.badge, tip=lambda row: row.badge.name
+            ),
+            Column(self.tr("CdA [m²]"), _cda_text, raw=_cda),
+            Column(
+                self.tr("vs repeats [σ]"),
+                _repeats_text,
+                raw=lambda row: row.figure.against_repeats if row.figure else None,
+                header_tip=self.tr("How far this run lies from its repeats, in standard errors"),
+            ),
+            Column(
+                self.tr("Starts"),
+                lambda row: clock(row.moment) if row.dated else elapsed(row.run.start),
+                raw=lambda row: row.moment,
+            ),
+            Column(
+                self.tr("Length"),
+                lambda row: "–" if row.length is None else duration(row.length),
+                raw=lambda row: row.length,
+            ),
+            Column(
+                self.tr("Laps"),
+                lambda row: str(row.figure.laps) if row.figure else "–",
+                raw=lambda row: float(row.figure.laps) if row.figure else None,
+            ),
+            self._figure(self.tr("Power"), Kind.POWER, lambda figure: figure.power),
+            self._figure(self.tr("Speed"), Kind.SPEED, lambda figure: figure.speed),
+            self._figure(self.tr("Air"), Kind.DENSITY, lambda figure: figure.air_density),
+            Column(
+                self.tr("Wind"),
+                lambda row: wind_text(self.desk, row.figure) if row.figure else "–",
+                raw=lambda row: row.figure.wind_speed if row.figure else None,
+            ),
+            Column(
+                self.tr("Left out because"),
+                lambda row: row.run.excluded,
+                tip=lambda row: row.run.note or row.run.excluded,
+            ),
+        )
+
+    def _figure(self, title: str, kind: Kind, pick: Callable[[RunEstimate], float | None]) -> Column[RunRow]:
         units = self.desk.units
 
-        def figure(kind: Kind, name: str, digits: int | None = None) -> Column[RunRow]:
-            titles = {
-                "power": self.tr("Power"), "speed": self.tr("Speed"), "air_density": self.tr("Air"),
-            }  # fmt: skip
-            return Column(
-                f"{titles[name]} [{units.symbol(kind)}]",
-                lambda row: units.number(getattr(row.figure, name, None), kind, digits),
-                raw=lambda row: getattr(row.figure, name, None),
-            )
+        def raw(row: RunRow) -> float | None:
+            return pick(row.figure) if row.figure else None
 
-        return (
-            Column(self.tr("Run"), lambda r: f"{r.run.id} · {r.badge.name}", raw=lambda r: float(r.run.id) if r.run.id.isdigit() else r.run.id,
-                   chip=lambda r: r.badge, tip=lambda r: r.badge.name),
-            Column(self.tr("CdA [m²]"), lambda r: f"{value_text(r.figure.cda)} {plus_minus(r.figure.cda)}" if r.figure and r.figure.cda else "–",
-                   raw=lambda r: r.figure.cda.value if r.figure and r.figure.cda else None),
-            Column(self.tr("vs repeats [σ]"), lambda r: "–" if r.figure is None or r.figure.against_repeats is None else plain(r.figure.against_repeats, 1, signed=True),
-                   raw=lambda r: r.figure.against_repeats if r.figure else None,
-                   header_tip=self.tr("How far this run lies from its repeats, in standard errors")),
-            Column(self.tr("Starts"), lambda r: clock(r.moment) if r.dated else elapsed(r.run.start), raw=lambda r: r.moment),
-            Column(self.tr("Length"), lambda r: "–" if r.length is None else duration(r.length), raw=lambda r: r.length),
-            Column(self.tr("Laps"), lambda r: str(r.figure.laps) if r.figure else "–", raw=lambda r: float(r.figure.laps) if r.figure else None),
-            figure(Kind.POWER, "power"),
-            figure(Kind.SPEED, "speed"),
-            figure(Kind.DENSITY, "air_density"),
-            Column(self.tr("Wind"), lambda r: wind_text(self.desk, r.figure) if r.figure else "–", raw=lambda r: r.figure.wind_speed if r.figure else None),
-            Column(self.tr("Left out because"), lambda r: r.run.excluded, tip=lambda r: r.run.note or r.run.excluded),
-        )  # fmt: skip
+        return Column(f"{title} [{units.symbol(kind)}]", lambda row: units.number(raw(row), kind), raw=raw)
 
     def blank(self) -> Blank | None:
         """Say how runs come to be."""
@@ -115,10 +137,16 @@ class RunsPage(Page):
             return None
         if not self.desk.session.rides:
             return Blank(
-                self.tr("No rides yet"), self.tr("Runs are cut from the rides of the day."), "ride.add", self.tr("Add ride files…")
+                self.tr("No rides yet"),
+                self.tr("Runs are cut from the rides of the day."),
+                "ride.add",
+                self.tr("Add ride files…"),
             )
         if self.desk.shelf.reading or self.desk.proposals.is_busy:
-            return Blank(self.tr("Looking for runs…"), self.tr("Laps that repeat are found in the rides and proposed as runs."))
+            return Blank(
+                self.tr("Looking for runs…"),
+                self.tr("Laps that repeat are found in the rides and proposed as runs."),
+            )
         return Blank(
             self.tr("No runs found by themselves"),
             self.tr("Drag over the day strip where a setup was ridden; letter keys say which setup it was."),
@@ -132,7 +160,9 @@ class RunsPage(Page):
         self._offer_words.setFont(self.theme.font(Type.PAGE))
         proposed = desk.proposals.runs
         self._offer.setVisible(bool(proposed))
-        self._offer_words.setText(self.tr("%n run(s) proposed; they stand dashed in the day strip.", "", len(proposed)))
+        self._offer_words.setText(
+            self.tr("%n run(s) proposed; they stand dashed in the day strip.", "", len(proposed))
+        )
         rides = desk.shelf.rides()
         axis = axis_of(desk.session, rides)
         badges = desk.badges()
@@ -141,9 +171,24 @@ class RunsPage(Page):
         rows = []
         for run in desk.session.runs:
             ride = rides.get(run.ride)
-            end = run.end if run.end is not None else float(ride.time[-1]) if ride is not None and ride.time.size else None
+            end = (
+                run.end
+                if run.end is not None
+                else float(ride.time[-1])
+                if ride is not None and ride.time.size
+                else None
+            )
             length = end - run.start if end is not None else None
-            rows.append(RunRow(run, badges[run.setup], axis.offsets.get(run.ride, 0.0) + run.start, axis.dated, length, figures.get(run.id)))
+            rows.append(
+                RunRow(
+                    run,
+                    badges[run.setup],
+                    axis.offsets.get(run.ride, 0.0) + run.start,
+                    axis.dated,
+                    length,
+                    figures.get(run.id),
+                )
+            )
         self._model.set_columns(self._columns())
         self._model.set_rows(tuple(rows))
         self._table.show_keys(desk.selection.runs)
@@ -153,3 +198,27 @@ class RunsPage(Page):
         self._merge.setEnabled(len(picked) > 1)
         self._remove.setEnabled(bool(picked))
         self._overlay.refresh()
+
+
+def _name(row: RunRow) -> str:
+    return f"{row.run.id} · {row.badge.name}"
+
+
+def _order(row: RunRow) -> float | str:
+    return float(row.run.id) if row.run.id.isdigit() else row.run.id
+
+
+def _cda(row: RunRow) -> float | None:
+    return row.figure.cda.value if row.figure and row.figure.cda else None
+
+
+def _cda_text(row: RunRow) -> str:
+    if row.figure is None or row.figure.cda is None:
+        return "–"
+    return f"{value_text(row.figure.cda)} {plus_minus(row.figure.cda)}"
+
+
+def _repeats_text(row: RunRow) -> str:
+    if row.figure is None or row.figure.against_repeats is None:
+        return "–"
+    return plain(row.figure.against_repeats, 1, signed=True)

@@ -30,7 +30,10 @@ class StartPage(QWidget):
         theme, px = desk.theme, desk.theme.px
         self._sentence = QLabel(self.tr("Which setup is faster, and how sure is that?"))
         self._words = QLabel(
-            self.tr("Ride files from a test day in; drag area per setup and rolling resistance per tyre set out, with honest intervals.")
+            self.tr(
+                "Ride files from a test day in; drag area per setup and rolling resistance per tyre set out, "
+                "with honest intervals."
+            )
         )
         self._words.setProperty("quiet", True)
         self._words.setWordWrap(True)
@@ -103,7 +106,10 @@ class StartPage(QWidget):
         if not known:
             self._say(self._samples, self.tr("The samples did not come with this installation."))
         else:
-            self._say(self._samples, self.tr("Invented days. A copy is put into your documents, so that you can change anything."))
+            self._say(
+                self._samples,
+                self.tr("Invented days. A copy is put into your documents, so that you can change anything."),
+            )
         folders = self._desk.settings.recent
         for folder in folders[:5]:
             self._add(self._recent, folder.name, str(folder), lambda f=folder: self.recent_chosen.emit(f))

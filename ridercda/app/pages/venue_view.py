@@ -53,7 +53,11 @@ def map_tracks(desk: Desk) -> tuple[Track, ...]:
                 end = run.end if run.end is not None else float(ride.time[-1])
                 inside = slice(int(ride.time.searchsorted(run.start)), int(ride.time.searchsorted(end)) + 1)
                 picked = run.id in desk.selection.runs
-                runs.append(Track(key, run.id, badges[run.setup], picked, ride.time[inside], east[inside], north[inside]))
+                runs.append(
+                    Track(
+                        key, run.id, badges[run.setup], picked, ride.time[inside], east[inside], north[inside]
+                    )
+                )
     return (*ways, *sorted(runs, key=lambda track: track.picked))
 
 
@@ -66,7 +70,9 @@ class VenueMap(Chart):
         super().__init__(desk.theme)
         self._desk = desk
         self._tracks: tuple[Track, ...] = ()
-        self._frame: tuple[float, float, float, QPointF] | None = None  # east, north of the middle, px per metre
+        self._frame: tuple[float, float, float, QPointF] | None = (
+            None  # east, north of the middle, px per metre
+        )
         desk.selection.moment_changed.connect(self.update)
 
     def show_tracks(self, tracks: tuple[Track, ...]) -> None:
@@ -79,9 +85,13 @@ class VenueMap(Chart):
         rows = []
         for track in self._tracks:
             if track.run:
-                for time, east, north in zip(track.time[::10], track.east[::10], track.north[::10], strict=True):
+                for time, east, north in zip(
+                    track.time[::10], track.east[::10], track.north[::10], strict=True
+                ):
                     rows.append((track.run, f"{time:.1f}", f"{east:.1f}", f"{north:.1f}"))
-        return ChartTable((self.tr("Run"), self.tr("Time [s]"), self.tr("East [m]"), self.tr("North [m]")), tuple(rows))
+        return ChartTable(
+            (self.tr("Run"), self.tr("Time [s]"), self.tr("East [m]"), self.tr("North [m]")), tuple(rows)
+        )
 
     def draw(self, painter: QPainter, area: QRectF) -> list[Mark]:
         """Draw ways, runs, the moment, scale and north."""
@@ -96,7 +106,9 @@ class VenueMap(Chart):
         north = np.concatenate([track.north for track in shown])
         low, high = (np.array([f(east), f(north)]) for f in (np.nanmin, np.nanmax))
         room = area.adjusted(px(12), px(12), -px(12), -px(36))
-        factor = float(min(room.width() / max(high[0] - low[0], 1.0), room.height() / max(high[1] - low[1], 1.0)))
+        factor = float(
+            min(room.width() / max(high[0] - low[0], 1.0), room.height() / max(high[1] - low[1], 1.0))
+        )
         middle = 0.5 * (low + high)
         self._frame = (float(middle[0]), float(middle[1]), factor, room.center())
         painter.save()
@@ -110,7 +122,9 @@ class VenueMap(Chart):
 
     def _at(self, east: float, north: float) -> QPointF:
         middle_east, middle_north, factor, centre = self._frame or (0.0, 0.0, 1.0, QPointF())
-        return QPointF(centre.x() + (east - middle_east) * factor, centre.y() - (north - middle_north) * factor)
+        return QPointF(
+            centre.x() + (east - middle_east) * factor, centre.y() - (north - middle_north) * factor
+        )
 
     def _draw_track(self, painter: QPainter, track: Track) -> None:
         px = self.theme.px
@@ -158,7 +172,14 @@ class VenueMap(Chart):
         painter.drawLine(QPointF(left, y), QPointF(left + width, y))
         for x in (left, left + width):
             painter.drawLine(QPointF(x, y - px(4)), QPointF(x, y))
-        drawing.label(painter, theme, left + width + px(8), y - px(2), f"{length:g} {units.symbol(Kind.HEIGHT)}", drawing.LEFT)
+        drawing.label(
+            painter,
+            theme,
+            left + width + px(8),
+            y - px(2),
+            f"{length:g} {units.symbol(Kind.HEIGHT)}",
+            drawing.LEFT,
+        )
         tip = QPointF(area.right() - px(12), area.bottom() - px(26))
         painter.setPen(QPen(theme.colour("axis"), px(1.5)))
         painter.drawLine(tip, tip + QPointF(0, px(20)))

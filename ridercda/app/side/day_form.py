@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime as dt
 from collections.abc import Callable
 from dataclasses import replace
+from functools import partial
 from typing import Any
 
 from PySide6.QtCore import QCoreApplication
@@ -42,6 +43,13 @@ def _part(part: str, name: str, put: Callable[[Session, Any], Session]) -> dict[
     }
 
 
+def _get_venue(name: str) -> Callable[[Session], float | None]:
+    def get(session: Session) -> float | None:
+        return getattr(session.venue, name) if session.venue else None
+
+    return get
+
+
 def _put_venue(name: str) -> Callable[[Session, float | None], Session]:
     def put(session: Session, value: float | None) -> Session:
         venue = session.venue or Venue(VenueKind.LOOP)
@@ -75,7 +83,9 @@ class DayForm(Form):
     def _build_session(self) -> None:
         self.heading(self.tr("Session"))
         self._name = TextField(self.theme)
-        self._name.committed.connect(lambda text: self._edit(self.tr("Rename session"), lambda s: edits.set_name(s, text)))
+        self._name.committed.connect(
+            lambda text: self._edit(self.tr("Rename session"), lambda s: edits.set_name(s, text))
+        )
         self.row(self.tr("Name"), self._name)
         self._date = TextField(self.theme)
         self._date.setPlaceholderText(self.tr("from the rides"))
@@ -92,7 +102,9 @@ class DayForm(Form):
         add = self._rows.add
         self.heading(self.tr("Rider, all up"))
         add(Figure(self.tr("Mass with kit"), Kind.MASS, **_part("rider", "mass", edits.set_rider)))
-        add(Figure(self.tr("Critical power"), Kind.POWER, **_part("rider", "critical_power", edits.set_rider)))
+        add(
+            Figure(self.tr("Critical power"), Kind.POWER, **_part("rider", "critical_power", edits.set_rider))
+        )
         add(Figure(self.tr("W′"), Kind.ENERGY, **_part("rider", "w_prime", edits.set_rider)))
         self.heading(self.tr("Bike, with bottles"))
         add(Figure(self.tr("Mass"), Kind.MASS, **_part("bike", "mass", edits.set_bike)))
@@ -106,26 +118,42 @@ class DayForm(Form):
 
     def _build_meter(self) -> None:
         self.heading(self.tr("Power meter"))
-        places = {"": self.tr("Crank (assumed)"), "crank": self.tr("Crank"), "pedals": self.tr("Pedals"), "hub": self.tr("Hub")}
+        places = {
+            "": self.tr("Crank (assumed)"),
+            "crank": self.tr("Crank"),
+            "pedals": self.tr("Pedals"),
+            "hub": self.tr("Hub"),
+        }
         self._place = Choice(self.theme, tuple(places.items()))
         self._place.activated.connect(self._on_place_activated)
         self.row(self.tr("Measures at"), self._place)
-        sides = {"": self.tr("Both (assumed)"), "both": self.tr("Both"), "left": self.tr("Left only"), "right": self.tr("Right only")}
+        sides = {
+            "": self.tr("Both (assumed)"),
+            "both": self.tr("Both"),
+            "left": self.tr("Left only"),
+            "right": self.tr("Right only"),
+        }
         self._sides = Choice(self.theme, tuple(sides.items()))
         self._sides.activated.connect(self._on_sides_activated)
         self.row(self.tr("Legs measured"), self._sides)
         part = _part("power_meter", "scale_sd", edits.set_power_meter)
-        self._rows.add(Figure(self.tr("Scale uncertainty (sd)"), Kind.RATIO, **part, default_key="power_meter.scale_sd"))
+        self._rows.add(
+            Figure(self.tr("Scale uncertainty (sd)"), Kind.RATIO, **part, default_key="power_meter.scale_sd")
+        )
 
     def _on_place_activated(self) -> None:
         place = MeterLocation(self._place.key) if self._place.key else None
         self._edit(
-            self.tr("Set power meter"), lambda s: edits.set_power_meter(s, replace(s.power_meter, location=place))
+            self.tr("Set power meter"),
+            lambda s: edits.set_power_meter(s, replace(s.power_meter, location=place)),
         )
 
     def _on_sides_activated(self) -> None:
         sides = MeterSides(self._sides.key) if self._sides.key else None
-        self._edit(self.tr("Set legs measured"), lambda s: edits.set_power_meter(s, replace(s.power_meter, sides=sides)))
+        self._edit(
+            self.tr("Set legs measured"),
+            lambda s: edits.set_power_meter(s, replace(s.power_meter, sides=sides)),
+        )
 
     def _build_air(self) -> None:
         self.heading(self.tr("Air of the day"))
@@ -145,9 +173,12 @@ class DayForm(Form):
     def _build_venue(self) -> None:
         self.heading(self.tr("Venue"))
         kinds = {
-            "": self.tr("not said yet"), "loop": self.tr("Loop"), "out-and-back": self.tr("Out and back"),
-            "track": self.tr("Indoor track"), "road": self.tr("Road, nothing repeats"),
-        }  # fmt: skip
+            "": self.tr("not said yet"),
+            "loop": self.tr("Loop"),
+            "out-and-back": self.tr("Out and back"),
+            "track": self.tr("Indoor track"),
+            "road": self.tr("Road, nothing repeats"),
+        }
         self._kind = Choice(self.theme, tuple(kinds.items()))
         self._kind.activated.connect(self._on_kind_activated)
         self.row(self.tr("Kind"), self._kind)
@@ -161,10 +192,15 @@ class DayForm(Form):
         ):
             field = self._rows.add(
                 Figure(
-                    words, kind, "Venue", name,
-                    lambda s, n=name: getattr(s.venue, n) if s.venue else None, _put_venue(name),
-                    default_key=key, assumed=found if name == "lap_length" else None,
-                )  # fmt: skip
+                    words,
+                    kind,
+                    "Venue",
+                    name,
+                    _get_venue(name),
+                    _put_venue(name),
+                    default_key=key,
+                    assumed=found if name == "lap_length" else None,
+                )
             )
             if name != "lap_length":
                 self._track_fields.append(field)
@@ -183,17 +219,24 @@ class DayForm(Form):
         self.heading(self.tr("What counts"))
         self._rows.add(
             Figure(
-                self.tr("Smallest worthwhile difference"), Kind.AREA, "Worthwhile", "cda",
+                self.tr("Smallest worthwhile difference"),
+                Kind.AREA,
+                "Worthwhile",
+                "cda",
                 lambda s: s.smallest_worthwhile.cda,
                 lambda s, value: edits.set_smallest_worthwhile(s, Worthwhile(cda=value)),
-            )  # fmt: skip
+            )
         )
         self._rows.add(
             Figure(
-                self.tr("CdA is told at"), Kind.SPEED, "Session", "reference_speed",
-                lambda s: s.reference_speed, edits.set_reference_speed,
+                self.tr("CdA is told at"),
+                Kind.SPEED,
+                "Session",
+                "reference_speed",
+                lambda s: s.reference_speed,
+                edits.set_reference_speed,
                 assumed=Assumed(None, self.tr("mean speed of the runs")),
-            )  # fmt: skip
+            )
         )
 
     def refresh(self, session: Session) -> None:
@@ -222,12 +265,25 @@ class TyresForm(Form):
             (self.tr("Its uncertainty (sd)"), Kind.RATIO, "crr_sd", ""),
             (self.tr("Pressure"), Kind.TYRE_PRESSURE, "pressure", ""),
             (self.tr("Roll-out"), Kind.LENGTH, "wheel_circumference", ""),
-            (self.tr("Change of Crr"), Kind.PER_KELVIN, "temperature_coefficient", "tyres.temperature_coefficient"),
+            (
+                self.tr("Change of Crr"),
+                Kind.PER_KELVIN,
+                "temperature_coefficient",
+                "tyres.temperature_coefficient",
+            ),
         ):
             found = Assumed(None, self.tr("found from the runs")) if name == "crr" else None
             self._rows.add(
-                Figure(words, kind, "Tyres", name, lambda s, n=name: self._get(s, n),
-                       lambda s, value, n=name: self._put(s, n, value), default_key=key, assumed=found)  # fmt: skip
+                Figure(
+                    words,
+                    kind,
+                    "Tyres",
+                    name,
+                    partial(self._get, name),
+                    partial(self._put, name),
+                    default_key=key,
+                    assumed=found,
+                )
             )
         desk.document.session_changed.connect(self.refresh)
         desk.selection.changed.connect(lambda: self.refresh(desk.session))
@@ -237,11 +293,11 @@ class TyresForm(Form):
         setup = next((s for s in session.setups if s.id == self._desk.selection.setup), None)
         return setup.tyres if setup else ""
 
-    def _get(self, session: Session, name: str) -> float | None:
+    def _get(self, name: str, session: Session) -> float | None:
         tyres = next((t for t in session.tyres if t.id == self._tyres_id(session)), None)
         return getattr(tyres, name) if tyres else None
 
-    def _put(self, session: Session, name: str, value: float | None) -> Session:
+    def _put(self, name: str, session: Session, value: float | None) -> Session:
         tyres_id = self._tyres_id(session)
         if not tyres_id:
             raise SessionError(self.tr("give the tyres a name first"), key="setup.tyres")
@@ -260,7 +316,7 @@ def _date_of(text: str) -> dt.date | None:
         return None
     for pattern in ("%Y-%m-%d", "%d.%m.%Y", "%d %B %Y", "%d %b %Y"):
         try:
-            return dt.datetime.strptime(text, pattern).date()  # noqa: DTZ007 - a date has no zone
+            return dt.datetime.strptime(text, pattern).date()
         except ValueError:
             continue
     raise SessionError(_tr("'{}' is not a date; write it like 2026-05-09").format(text), key="date")

@@ -44,10 +44,14 @@ class RunFacts(Form):
         self._reason = self.note("")
         self._facts: dict[str, QLabel] = {}
         for key, words in (
-            ("laps", self.tr("Laps")), ("power", self.tr("Power")), ("speed", self.tr("Speed")),
-            ("air", self.tr("Air density")), ("wind", self.tr("Wind at the rider")), ("cda", self.tr("CdA of this run")),
+            ("laps", self.tr("Laps")),
+            ("power", self.tr("Power")),
+            ("speed", self.tr("Speed")),
+            ("air", self.tr("Air density")),
+            ("wind", self.tr("Wind at the rider")),
+            ("cda", self.tr("CdA of this run")),
             ("repeats", self.tr("Against repeats")),
-        ):  # fmt: skip
+        ):
             label = QLabel()
             label.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignTop)
             label.setFont(self.theme.font())
@@ -56,8 +60,28 @@ class RunFacts(Form):
             self._facts[key] = label
         self._rows = FigureRows(desk, self)
         end_of_ride = Assumed(None, self.tr("to the end of the ride"))
-        self._rows.add(Figure(self.tr("Starts"), Kind.DURATION, "Run", "start", lambda s: self._edge(s, "start"), self._put_start, required=True))
-        self._rows.add(Figure(self.tr("Ends"), Kind.DURATION, "Run", "end", lambda s: self._edge(s, "end"), self._put_end, assumed=end_of_ride))
+        self._rows.add(
+            Figure(
+                self.tr("Starts"),
+                Kind.DURATION,
+                "Run",
+                "start",
+                lambda s: self._edge(s, "start"),
+                self._put_start,
+                required=True,
+            )
+        )
+        self._rows.add(
+            Figure(
+                self.tr("Ends"),
+                Kind.DURATION,
+                "Run",
+                "end",
+                lambda s: self._edge(s, "end"),
+                self._put_end,
+                assumed=end_of_ride,
+            )
+        )
         self._note = TextField(self.theme)
         self._note.committed.connect(self._on_note_committed)
         self.row(self.tr("Note"), self._note)
@@ -65,7 +89,13 @@ class RunFacts(Form):
         self._leave_out.clicked.connect(self._on_leave_out_clicked)
         self.line(link_line(self.theme, self._leave_out))
         self.stretch()
-        for signal in (desk.document.session_changed, desk.selection.changed, desk.solving.changed, desk.units.changed, desk.theme.changed):
+        for signal in (
+            desk.document.session_changed,
+            desk.selection.changed,
+            desk.solving.changed,
+            desk.units.changed,
+            desk.theme.changed,
+        ):
             signal.connect(self.refresh)
         self.refresh()
 
@@ -111,7 +141,9 @@ class RunFacts(Form):
         if run is None:
             self._chip.clear()
             self._title.setText(self.tr("No run picked"))
-            self._reason.setText(self.tr("Click a run in the day strip, or step through them with the arrow keys."))
+            self._reason.setText(
+                self.tr("Click a run in the day strip, or step through them with the arrow keys.")
+            )
             self._reason.setVisible(True)
             for label in self._facts.values():
                 label.setText("–")

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
+from functools import partial
 
 from PySide6.QtWidgets import QWidget
 
@@ -29,9 +30,18 @@ class SetupForm(Form):
         self._rows = FigureRows(desk, self)
         self._head = self.heading("")
         self._texts = {}
-        for name, words in (("name", self.tr("Name")), ("letter", self.tr("Letter")), ("tyres", self.tr("Tyres")), ("notes", self.tr("Notes"))):
+        for name, words in (
+            ("name", self.tr("Name")),
+            ("letter", self.tr("Letter")),
+            ("tyres", self.tr("Tyres")),
+            ("notes", self.tr("Notes")),
+        ):
             field = TextField(self.theme)
-            field.committed.connect(lambda text, n=name, w=words: self._change(self.tr("Set {}").format(w.lower()), lambda s: replace(s, **{n: text})))
+            field.committed.connect(
+                lambda text, n=name, w=words: self._change(
+                    self.tr("Set {}").format(w.lower()), lambda s: replace(s, **{n: text})
+                )
+            )
             self.row(words, field)
             self._texts[name] = field
         self._texts["letter"].setMaxLength(2)
@@ -42,8 +52,15 @@ class SetupForm(Form):
             (self.tr("Held for"), Kind.RATIO, "held", "setup.held"),
         ):
             self._rows.add(
-                Figure(words, kind, "Setup", name, lambda s, n=name: self._get(s, n),
-                       lambda s, value, n=name: self._put(s, n, value), default_key=key)  # fmt: skip
+                Figure(
+                    words,
+                    kind,
+                    "Setup",
+                    name,
+                    partial(self._get, name),
+                    partial(self._put, name),
+                    default_key=key,
+                )
             )
         self._baseline = link(self.tr("Make baseline"))
         self._baseline.clicked.connect(self._on_baseline_clicked)
@@ -59,12 +76,12 @@ class SetupForm(Form):
     def _setup(self, session: Session) -> Setup | None:
         return next((s for s in session.setups if s.id == self._desk.selection.setup), None)
 
-    def _get(self, session: Session, name: str) -> float | None:
+    def _get(self, name: str, session: Session) -> float | None:
         setup = self._setup(session)
         value = getattr(setup, name) if setup else None
         return None if name == "mass_change" and not value else value
 
-    def _put(self, session: Session, name: str, value: float | None) -> Session:
+    def _put(self, name: str, session: Session, value: float | None) -> Session:
         setup = session.setup(self._desk.selection.setup)
         new = 0.0 if value is None and name == "mass_change" else value
         return edits.change_setup(session, setup.id, replace(setup, **{name: new}))  # type: ignore[arg-type]
@@ -101,5 +118,7 @@ class SetupForm(Form):
         baseline = session.baseline
         self._baseline.setEnabled(baseline is None or baseline.id != setup.id)
         self._remove.setEnabled(not any(run.setup == setup.id for run in session.runs))
-        self._remove.setToolTip("" if self._remove.isEnabled() else self.tr("Its runs must be reassigned or removed first."))
+        self._remove.setToolTip(
+            "" if self._remove.isEnabled() else self.tr("Its runs must be reassigned or removed first.")
+        )
         self._rows.refresh(session)

@@ -14,7 +14,14 @@ from PySide6.QtCore import (
     Signal,
 )
 from PySide6.QtGui import QPainter
-from PySide6.QtWidgets import QAbstractItemView, QFrame, QListView, QStyle, QStyledItemDelegate, QStyleOptionViewItem
+from PySide6.QtWidgets import (
+    QAbstractItemView,
+    QFrame,
+    QListView,
+    QStyle,
+    QStyledItemDelegate,
+    QStyleOptionViewItem,
+)
 
 from ridercda.app.desk import Desk
 from ridercda.app.drag_words import difference_from_baseline
@@ -46,7 +53,9 @@ class SetupLine:
     stale: bool
 
 
-def setup_lines(session: Session, badges: dict[str, Badge], estimate: Estimate | None, *, stale: bool) -> tuple[SetupLine, ...]:
+def setup_lines(
+    session: Session, badges: dict[str, Badge], estimate: Estimate | None, *, stale: bool
+) -> tuple[SetupLine, ...]:
     """Return a row per setup."""
     figures = {s.id: s for s in estimate.setups} if estimate else {}
     baseline = session.baseline
@@ -64,12 +73,16 @@ def setup_lines(session: Session, badges: dict[str, Badge], estimate: Estimate |
             short = plain(difference.value, decimals, signed=True)
         lines.append(
             SetupLine(
-                setup.id, badges[setup.id], runs, is_baseline,
+                setup.id,
+                badges[setup.id],
+                runs,
+                is_baseline,
                 value_text(figure) if figure else "",
                 f"{plus_minus(figure)}\u00a0m²" if figure else "",
                 f"{value_text(difference, signed=True)} {plus_minus(difference)}" if difference else "",
-                short, stale,
-            )  # fmt: skip
+                short,
+                stale,
+            )
         )
     return tuple(lines)
 
@@ -159,10 +172,14 @@ class _Rows(QStyledItemDelegate):
             right = drawing.width_of(font, line.short) + px(8)
             place = QRectF(head.right() - right, head.top(), right, head.height())
             drawing.text(painter, place, line.short, font, theme.colour("quiet"), drawing.RIGHT)
-        name = QRectF(chip.right() + px(8), head.top(), head.right() - chip.right() - px(8) - right, head.height())
+        name = QRectF(
+            chip.right() + px(8), head.top(), head.right() - chip.right() - px(8) - right, head.height()
+        )
         drawing.text(painter, name, line.badge.name, theme.font(strong=is_open), theme.colour("ink"))
         if is_open:
-            self._paint_open(painter, line, QRectF(name.left(), head.bottom() - px(4), head.right() - name.left(), px(44)))
+            self._paint_open(
+                painter, line, QRectF(name.left(), head.bottom() - px(4), head.right() - name.left(), px(44))
+            )
         painter.restore()
 
     def _paint_open(self, painter: QPainter, line: SetupLine, rect: QRectF) -> None:
@@ -203,7 +220,12 @@ class SetupList(QListView):
         self._quiet = False
         self.selectionModel().currentChanged.connect(self._on_current_changed)
         self.doubleClicked.connect(lambda index: self.edit_requested.emit(index.data(LINE_ROLE).id))
-        for signal in (desk.document.session_changed, desk.solving.changed, desk.selection.changed, desk.theme.changed):
+        for signal in (
+            desk.document.session_changed,
+            desk.solving.changed,
+            desk.selection.changed,
+            desk.theme.changed,
+        ):
             signal.connect(self.refresh)
         self.refresh()
 

@@ -74,7 +74,9 @@ def day_axis(rides: Iterable[RideSpan]) -> DayAxis:
     offsets = _offsets(rides)
     dated = bool(rides) and all(ride.start is not None for ride in rides)
     spans = sorted(
-        (offsets[ride.id] + start, offsets[ride.id] + end) for ride in rides for start, end in ride.busy or ((0.0, ride.duration),)
+        (offsets[ride.id] + start, offsets[ride.id] + end)
+        for ride in rides
+        for start, end in ride.busy or ((0.0, ride.duration),)
     )
     if not spans:
         return DayAxis(np.array([0.0, 1.0]), np.array([0.0, 1.0]), offsets, (), dated)
@@ -105,7 +107,11 @@ def day_axis(rides: Iterable[RideSpan]) -> DayAxis:
 def _offsets(rides: tuple[RideSpan, ...]) -> dict[str, float]:
     offsets: dict[str, float] = {}
     starts = [ride.start for ride in rides if ride.start is not None]
-    midnight = min(starts).replace(hour=0, minute=0, second=0, microsecond=0) if starts and _comparable(starts) else None
+    midnight = (
+        min(starts).replace(hour=0, minute=0, second=0, microsecond=0)
+        if starts and _comparable(starts)
+        else None
+    )
     after = 0.0
     for ride in rides:
         if ride.start is not None and midnight is not None:

@@ -37,7 +37,11 @@ class Bands:
     def within(cls, theme: Theme, area: QRectF, names: tuple[str, ...], *, wind: bool, zoomed: bool) -> Bands:
         """Return the parts for an area."""
         px = theme.px
-        gutter = area.left() + px(12) + round(max(drawing.width_of(theme.font(Type.AXIS), name) for name in names) + px(10))
+        gutter = (
+            area.left()
+            + px(12)
+            + round(max(drawing.width_of(theme.font(Type.AXIS), name) for name in names) + px(10))
+        )
         left, width = gutter, area.right() - px(10) - gutter
         foot = area.bottom() - px(4)
         map_height = px(8) if zoomed else 0
@@ -69,7 +73,9 @@ def binned(along: FloatArray, values: FloatArray, view: StripView) -> tuple[Floa
         return x[starts], np.where(counts > 0, sums / counts, np.nan)
 
 
-def draw_traces(painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, rect: QRectF) -> None:
+def draw_traces(
+    painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, rect: QRectF
+) -> None:
     """Draw power above and speed below, each over its own range."""
     for name, width in (("speed", 1.1), ("power", 1.2)):
         tops = [_top(getattr(trace, name)) for trace in picture.traces if getattr(trace, name) is not None]
@@ -95,7 +101,9 @@ def _top(values: FloatArray) -> float:
     return float(np.quantile(finite, 0.997)) if finite.size else 1.0
 
 
-def _draw_trace(painter: QPainter, trace: StripTrace, name: str, top: float, view: StripView, rect: QRectF) -> None:
+def _draw_trace(
+    painter: QPainter, trace: StripTrace, name: str, top: float, view: StripView, rect: QRectF
+) -> None:
     values = getattr(trace, name)
     if values is None or top <= 0:
         return
@@ -109,14 +117,18 @@ def _draw_trace(painter: QPainter, trace: StripTrace, name: str, top: float, vie
         painter.drawPolyline(QPolygonF([QPointF(a, b) for a, b in points]))
 
 
-def draw_ground(painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, bands: Bands) -> None:
+def draw_ground(
+    painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, bands: Bands
+) -> None:
     """Draw the pale ground of each block, under the traces."""
     for run in picture.runs:
         left, right = block_extent(view, run)
         if right < view.left or left > view.right:
             continue
         look = theme.chip(run.badge.index)
-        rect = QRectF(left, bands.letters.bottom() - 4, right - left, bands.faults.top() - bands.letters.bottom() + 4)
+        rect = QRectF(
+            left, bands.letters.bottom() - 4, right - left, bands.faults.top() - bands.letters.bottom() + 4
+        )
         colour = theme.colour("hairline", 0.45) if run.excluded else theme.band(look.fill, 0.86)
         painter.fillRect(rect, colour)
         if look.hatched and not run.excluded:
@@ -125,11 +137,15 @@ def draw_ground(painter: QPainter, theme: Theme, picture: StripPicture, view: St
             drawing.hatch(painter, path, theme.band(look.fill, 0.68), theme.px(8))
         for start, end in run.spans_out:
             path = QPainterPath()
-            path.addRect(QRectF(view.x(start), rect.top(), max(2.0, view.x(end) - view.x(start)), rect.height()))
+            path.addRect(
+                QRectF(view.x(start), rect.top(), max(2.0, view.x(end) - view.x(start)), rect.height())
+            )
             drawing.hatch(painter, path, theme.colour("axis"), theme.px(5))
 
 
-def draw_blocks(painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, bands: Bands) -> None:
+def draw_blocks(
+    painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, bands: Bands
+) -> None:
     """Draw the heads of the blocks with their letters."""
     for run in picture.runs:
         left, right = block_extent(view, run)
@@ -138,6 +154,23 @@ def draw_blocks(painter: QPainter, theme: Theme, picture: StripPicture, view: St
         gap = 0.5 if right - left > 4 else 0.0
         head = QRectF(left + gap, bands.letters.top(), right - left - 2 * gap, bands.letters.height())
         _draw_head(painter, theme, run, head)
+
+
+def draw_proposals(
+    painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, bands: Bands
+) -> None:
+    """Draw dashed outlines of the runs that are only proposed."""
+    painter.setPen(QPen(theme.colour("accent"), theme.px(1.2), Qt.PenStyle.DashLine))
+    painter.setBrush(theme.colour("accent", 0.06))
+    for run in picture.proposals:
+        left, right = view.x(run.left), view.x(run.right)
+        rect = QRectF(
+            left + 1,
+            bands.letters.top(),
+            max(2.0, right - left - 2),
+            bands.faults.top() - bands.letters.top(),
+        )
+        painter.drawRoundedRect(rect, theme.px(4), theme.px(4))
 
 
 def _draw_head(painter: QPainter, theme: Theme, run: StripRun, head: QRectF) -> None:
@@ -159,23 +192,40 @@ def _draw_head(painter: QPainter, theme: Theme, run: StripRun, head: QRectF) -> 
         width = drawing.width_of(font, letter) + theme.px(6)
         middle = head.center()
         painter.setPen(QPen(theme.colour("quiet"), theme.px(1.2)))
-        painter.drawLine(QPointF(middle.x() - width / 2, middle.y()), QPointF(middle.x() + width / 2, middle.y()))
+        painter.drawLine(
+            QPointF(middle.x() - width / 2, middle.y()), QPointF(middle.x() + width / 2, middle.y())
+        )
 
 
-def draw_picked(painter: QPainter, theme: Theme, view: StripView, bands: Bands, run: StripRun, grip: Grip | None, *, focus: bool) -> None:  # fmt: skip
+def draw_picked(
+    painter: QPainter,
+    theme: Theme,
+    view: StripView,
+    bands: Bands,
+    run: StripRun,
+    grip: Grip | None,
+    *,
+    focus: bool,
+) -> None:
     """Draw the frame about a picked run, and the edge that the keyboard holds."""
     left, right = block_extent(view, run)
-    rect = QRectF(left - 2, bands.letters.top() - 3, right - left + 4, bands.faults.top() - bands.letters.top() + 5)
+    rect = QRectF(
+        left - 2, bands.letters.top() - 3, right - left + 4, bands.faults.top() - bands.letters.top() + 5
+    )
     painter.setBrush(Qt.BrushStyle.NoBrush)
     painter.setPen(QPen(theme.colour("accent" if focus else "ink"), theme.px(1.8)))
     painter.drawRoundedRect(rect, theme.px(5), theme.px(5))
     if grip in (Grip.START, Grip.END):
         x = left if grip is Grip.START else right
-        painter.setPen(QPen(theme.colour("accent"), theme.px(4), Qt.PenStyle.SolidLine, Qt.PenCapStyle.RoundCap))
+        painter.setPen(
+            QPen(theme.colour("accent"), theme.px(4), Qt.PenStyle.SolidLine, Qt.PenCapStyle.RoundCap)
+        )
         painter.drawLine(QPointF(x, rect.top() + theme.px(4)), QPointF(x, rect.bottom() - theme.px(4)))
 
 
-def draw_faults(painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, rect: QRectF) -> None:
+def draw_faults(
+    painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, rect: QRectF
+) -> None:
     """Draw a tick per fault, its shape by kind."""
     painter.setPen(Qt.PenStyle.NoPen)
     painter.setBrush(theme.colour("bad"))
@@ -204,7 +254,9 @@ def fault_path(fault: StripFault, centre: QPointF, size: float) -> QPainterPath:
     return path
 
 
-def draw_wind(painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, rect: QRectF, scale: float) -> None:  # fmt: skip
+def draw_wind(
+    painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, rect: QRectF, scale: float
+) -> None:
     """Draw per run an arrow the way the wind blows, north up, and its speed where there is room."""
     font = theme.font(Type.AXIS)
     colour = theme.colour("quiet")
@@ -270,7 +322,9 @@ def _draw_fold(painter: QPainter, theme: Theme, x: float, rect: QRectF) -> None:
     painter.fillRect(QRectF(x - px(3), rect.top() - px(3), px(6), px(6)), theme.colour("card"))
     painter.setPen(QPen(theme.colour("axis"), px(1.2)))
     for shift in (-3, 1):
-        painter.drawLine(QPointF(x + px(shift), rect.top() + px(4)), QPointF(x + px(shift + 3), rect.top() - px(4)))
+        painter.drawLine(
+            QPointF(x + px(shift), rect.top() + px(4)), QPointF(x + px(shift + 3), rect.top() - px(4))
+        )
 
 
 def draw_map(painter: QPainter, theme: Theme, picture: StripPicture, view: StripView, rect: QRectF) -> None:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -12,7 +12,7 @@ from ridercda.app.letters import Badge, badges
 from ridercda.app.strip.day_axis import DayAxis, RideSpan, day_axis
 from ridercda.drag.estimate import Estimate
 from ridercda.rides.ride import FaultKind, Ride
-from ridercda.session.document import Session
+from ridercda.session.document import Run, Session
 
 FloatArray = npt.NDArray[np.float64]
 
@@ -53,6 +53,14 @@ class StripRun:
 
 
 @dataclass(frozen=True, slots=True)
+class StripProposal:
+    """A run that is only proposed."""
+
+    left: float  # along the axis [s]
+    right: float  # [s]
+
+
+@dataclass(frozen=True, slots=True)
 class StripFault:
     """A fault as a tick."""
 
@@ -86,6 +94,7 @@ class StripPicture:
     faults: tuple[StripFault, ...] = ()
     traces: tuple[StripTrace, ...] = ()
     rides: Mapping[str, Ride] = field(default_factory=dict)
+    proposals: tuple[StripProposal, ...] = ()
 
     def run(self, run_id: str) -> StripRun | None:
         """Return a run's block."""
@@ -123,7 +132,9 @@ def faults_of(axis: DayAxis, rides: Mapping[str, Ride]) -> tuple[StripFault, ...
     for key, ride in rides.items():
         for fault in ride.faults:
             if fault.end - fault.start < WHOLE_RIDE * ride.duration:
-                ticks.append(StripFault(key, fault.kind, axis.place(key, 0.5 * (fault.start + fault.end)), fault.cause))
+                ticks.append(
+                    StripFault(key, fault.kind, axis.place(key, 0.5 * (fault.start + fault.end)), fault.cause)
+                )
     return tuple(ticks)
 
 
@@ -143,12 +154,32 @@ def runs_of(
         spans = tuple((axis.place(run.ride, x.start), axis.place(run.ride, x.end)) for x in run.exclusions)
         blocks.append(
             StripRun(
-                run.id, run.ride, run.setup, run.start, end, axis.place(run.ride, run.start),
-                axis.place(run.ride, end), known[run.setup], run.excluded,
-                figure.wind_speed if figure else None, figure.wind_from if figure else None, spans,
-            )  # fmt: skip
+                run.id,
+                run.ride,
+                run.setup,
+                run.start,
+                end,
+                axis.place(run.ride, run.start),
+                axis.place(run.ride, end),
+                known[run.setup],
+                run.excluded,
+                figure.wind_speed if figure else None,
+                figure.wind_from if figure else None,
+                spans,
+            )
         )
     return tuple(sorted(blocks, key=lambda block: block.left))
+
+
+def proposals_of(runs: Iterable[Run], axis: DayAxis, rides: Mapping[str, Ride]) -> tuple[StripProposal, ...]:
+    """Return an outline per proposed run whose ride is here."""
+    outlines = []
+    for run in runs:
+        ride = rides.get(run.ride)
+        if ride is not None and ride.time.size:
+            end = run.end if run.end is not None else float(ride.time[-1])
+            outlines.append(StripProposal(axis.place(run.ride, run.start), axis.place(run.ride, end)))
+    return tuple(outlines)
 
 
 def _busy(ride: Ride) -> tuple[tuple[float, float], ...]:

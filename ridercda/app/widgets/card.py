@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from operator import itemgetter
 from pathlib import Path
 
 from PySide6.QtCore import QRectF, Qt
@@ -78,7 +79,9 @@ class ChartCard(Card):
         chart.setAccessibleName(title)
         self._model: TableModel[tuple[str, ...]] = TableModel(())
         self._table = TableView(theme, self._model)
-        self._table.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Ignored)  # the picture sets the size
+        self._table.setSizePolicy(
+            QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Ignored
+        )  # the picture sets the size
         self._stack = QStackedWidget()
         self._stack.addWidget(chart)
         self._stack.addWidget(self._table)
@@ -110,8 +113,8 @@ class ChartCard(Card):
         if not self.as_table.isChecked():
             return
         table = self.chart.table()
-        columns = tuple(
-            Column[tuple[str, ...]](header, lambda row, i=i: row[i]) for i, header in enumerate(table.headers)
+        columns: tuple[Column[tuple[str, ...]], ...] = tuple(
+            Column(header, itemgetter(place)) for place, header in enumerate(table.headers)
         )
         self._model.set_columns(columns)
         self._model.set_rows(table.rows)
@@ -122,9 +125,11 @@ class ChartCard(Card):
 
     def _on_save_picture(self) -> None:
         name, _ = QFileDialog.getSaveFileName(
-            self, self.tr("Save picture"), f"{_file_name(self.chart.title)}.png",
+            self,
+            self.tr("Save picture"),
+            f"{_file_name(self.chart.title)}.png",
             self.tr("PNG picture (*.png);;SVG picture (*.svg)"),
-        )  # fmt: skip
+        )
         if name.lower().endswith(".svg"):
             self.chart.save_svg(Path(name))
         elif name:

@@ -96,7 +96,7 @@ class Chart(QWidget):
         image.setDevicePixelRatio(factor)
         image.fill(self.theme.colour("card"))
         self._draw_on(image)
-        if not image.save(str(path), "PNG"):
+        if not image.save(str(path), b"PNG"):
             raise OSError(f"{path}: cannot be written")
 
     def save_svg(self, path: Path) -> None:
@@ -216,5 +216,3 @@ class Chart(QWidget):
                 QToolTip.hideText()
             return True
         return super().event(event)
-
-

@@ -23,8 +23,17 @@ def text(
     painter.drawText(rect, int(align) | int(Qt.TextFlag.TextSingleLine), shown)
 
 
-def label(painter: QPainter, theme: Theme, x: float, y: float, words: str, align: Qt.AlignmentFlag = CENTRE,
-          *, role: str = "quiet", strong: bool = False) -> QRectF:  # fmt: skip
+def label(
+    painter: QPainter,
+    theme: Theme,
+    x: float,
+    y: float,
+    words: str,
+    align: Qt.AlignmentFlag = CENTRE,
+    *,
+    role: str = "quiet",
+    strong: bool = False,
+) -> QRectF:
     """Write an axis label about a point: centred on it, or to its right (LEFT) or left (RIGHT)."""
     font = theme.font(Type.AXIS, strong=strong)
     metrics = QFontMetricsF(font)

@@ -48,8 +48,15 @@ class EllipseChart(Chart):
 
     def table(self) -> ChartTable:
         """Return centre and extent of each region."""
-        headers = (self.tr("Setup"), self._axes[0], self.tr("Low"), self.tr("High"),
-                   self._axes[1], self.tr("Low"), self.tr("High"))  # fmt: skip
+        headers = (
+            self.tr("Setup"),
+            self._axes[0],
+            self.tr("Low"),
+            self.tr("High"),
+            self._axes[1],
+            self.tr("Low"),
+            self.tr("High"),
+        )
         rows = []
         for region in self._regions:
             low, high = region.outline.min(axis=0), region.outline.max(axis=0)
@@ -63,7 +70,9 @@ class EllipseChart(Chart):
         if not self._regions:
             return []
         points = np.vstack([region.outline for region in self._regions])
-        x_range, y_range = (padded(float(points[:, k].min()), float(points[:, k].max()), 0.06) for k in (0, 1))
+        x_range, y_range = (
+            padded(float(points[:, k].min()), float(points[:, k].max()), 0.06) for k in (0, 1)
+        )
         top, bottom = area.top() + px(22), area.bottom() - px(42)
         y_count = max(2, int((bottom - top) / px(48)))
         y_ticks = ticks(*y_range, y_count)
@@ -109,7 +118,9 @@ class EllipseChart(Chart):
         return Mark(region.key, path.boundingRect(), region.name)
 
 
-def ellipse(centre: tuple[float, float], covariance: FloatArray, radius: float, points: int = 96) -> FloatArray:
+def ellipse(
+    centre: tuple[float, float], covariance: FloatArray, radius: float, points: int = 96
+) -> FloatArray:
     """Return the outline of {x: (x - centre)' covariance^-1 (x - centre) <= radius^2}, shape (points, 2)."""
     values, vectors = np.linalg.eigh(covariance)
     angle = np.linspace(0.0, 2 * np.pi, points)

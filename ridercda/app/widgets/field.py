@@ -58,7 +58,9 @@ class QuantityField(QWidget):
         self.line.setFont(self._theme.font())
         self._words.setFont(self._theme.font(Type.AXIS))
 
-    def set_value(self, value: float | None, assumed: Assumed | None = None, *, required: bool = False) -> None:
+    def set_value(
+        self, value: float | None, assumed: Assumed | None = None, *, required: bool = False
+    ) -> None:
         """Show a value, or what is assumed without one; what is being typed is left alone."""
         same = (value, assumed, required) == (self._value, self._assumed, self._required)
         self._value, self._assumed, self._required = value, assumed, required
@@ -74,7 +76,9 @@ class QuantityField(QWidget):
         """Return a value as the field shows it."""
         if self._kind is Kind.DURATION:
             return format_duration(value, 0 if value == round(value) else 1)
-        return self._units.text(value, self._kind, self._digits(value)).replace("\u00a0", " ").replace("−", "-")
+        return (
+            self._units.text(value, self._kind, self._digits(value)).replace("\u00a0", " ").replace("−", "-")
+        )
 
     def _digits(self, value: float) -> int | None:
         """Return decimals enough that a typed value is shown as typed, to five figures."""
@@ -143,17 +147,28 @@ class QuantityField(QWidget):
 
     def eventFilter(self, watched: QObject, event: QEvent) -> bool:
         """Escape gives up what was typed."""
-        if isinstance(event, QKeyEvent) and event.type() is QEvent.Type.KeyPress and event.key() == Qt.Key.Key_Escape:
-            if self.line.isModified():
-                self._show()
-                return True
+        if (
+            isinstance(event, QKeyEvent)
+            and event.type() is QEvent.Type.KeyPress
+            and event.key() == Qt.Key.Key_Escape
+            and self.line.isModified()
+        ):
+            self._show()
+            return True
         return super().eventFilter(watched, event)
 
 
 def short_source(source: str) -> str:
     """Return a source short enough to stand under a field: its first words, and the year where it has one."""
     head = source.split(":")[0].split(",")[0]
-    year = next((word.strip("().,") for word in source.replace(",", " ").split() if word.strip("().,").isdigit() and len(word.strip("().,")) == 4), "")
+    year = next(
+        (
+            word.strip("().,")
+            for word in source.replace(",", " ").split()
+            if word.strip("().,").isdigit() and len(word.strip("().,")) == 4
+        ),
+        "",
+    )
     return f"{head} {year}".strip() if year and year not in head else head
 
 

@@ -82,8 +82,14 @@ class IntervalChart(Chart):
     def table(self) -> ChartTable:
         """Return setup, words, difference and interval as rows."""
         picture = self._picture
-        headers = (self.tr("Setup"), self.tr("Verdict"), picture.value_header or picture.axis,
-                   self.tr("Low"), self.tr("High"), *picture.columns)  # fmt: skip
+        headers = (
+            self.tr("Setup"),
+            self.tr("Verdict"),
+            picture.value_header or picture.axis,
+            self.tr("Low"),
+            self.tr("High"),
+            *picture.columns,
+        )
         rows = []
         for row in picture.rows:
             value = "" if row.value is None else f"{row.value:.6g}"
@@ -98,7 +104,8 @@ class IntervalChart(Chart):
             return []
         strong, small = self.theme.font(Type.TEXT, strong=True), self.theme.font(Type.AXIS)
         words_width = max(
-            max(drawing.width_of(strong, row.words), min(drawing.width_of(small, row.note), px(190))) for row in picture.rows
+            max(drawing.width_of(strong, row.words), min(drawing.width_of(small, row.note), px(190)))
+            for row in picture.rows
         )
         column_width = px(84)
         left = area.left() + px(36) + min(words_width + px(24), area.width() * 0.32)
@@ -137,8 +144,13 @@ class IntervalChart(Chart):
         count = max(2, int((across.last - across.first) / px(110)))
         step = tick_step(across.low, across.high, count)
         if picture.worthwhile:
-            ends = (across(max(-picture.worthwhile, across.low)), across(min(picture.worthwhile, across.high)))
-            painter.fillRect(QRectF(ends[0], top, ends[1] - ends[0], bottom - top), theme.colour("hairline", 0.35))
+            ends = (
+                across(max(-picture.worthwhile, across.low)),
+                across(min(picture.worthwhile, across.high)),
+            )
+            painter.fillRect(
+                QRectF(ends[0], top, ends[1] - ends[0], bottom - top), theme.colour("hairline", 0.35)
+            )
         for tick in ticks(across.low, across.high, count):
             x = across(tick)
             zero = abs(tick) < step / 1e6
@@ -160,8 +172,18 @@ class IntervalChart(Chart):
                 drawing.label(painter, theme, x, top - px(16), f"{number}\u00a0{second.unit}")
             drawing.label(painter, theme, area.left(), top - px(16), second.caption, drawing.LEFT)
 
-    def _draw_row(self, painter: QPainter, row: IntervalRow, across: Scale, middle: float, pitch: float,
-                  area: QRectF, left: float, right: float, column_width: float) -> None:  # fmt: skip
+    def _draw_row(
+        self,
+        painter: QPainter,
+        row: IntervalRow,
+        across: Scale,
+        middle: float,
+        pitch: float,
+        area: QRectF,
+        left: float,
+        right: float,
+        column_width: float,
+    ) -> None:
         theme, px = self.theme, self.theme.px
         side = min(px(22), pitch * 0.8)
         lift = px(7) if pitch > px(36) else 0
@@ -177,7 +199,9 @@ class IntervalChart(Chart):
         if row.interval:
             thick = min(px(18), pitch * 0.5)
             ends = [across(end) for end in row.interval]
-            drawing.band(painter, theme, QRectF(ends[0], line - thick / 2, ends[1] - ends[0], thick), row.chip)
+            drawing.band(
+                painter, theme, QRectF(ends[0], line - thick / 2, ends[1] - ends[0], thick), row.chip
+            )
         if row.value is not None:
             drawing.dot(painter, theme, QPointF(across(row.value), line), row.chip, min(px(13), pitch * 0.42))
         if pitch > px(24):

@@ -48,7 +48,9 @@ class LineChart(Chart):
         self._scale: Scale | None = None
         self._with_zero = False
 
-    def show_curves(self, curves: tuple[Curve, ...], across: str, up: str, *, with_zero: bool = False) -> None:
+    def show_curves(
+        self, curves: tuple[Curve, ...], across: str, up: str, *, with_zero: bool = False
+    ) -> None:
         """Show other curves; the axes are named with their units; `with_zero` draws the zero line."""
         self._curves, self._axes, self._with_zero = curves, (across, up), with_zero
         self.update()
@@ -64,7 +66,11 @@ class LineChart(Chart):
         rows = []
         for curve in self._curves:
             name = curve.label or curve.key
-            rows += [(name, f"{x:.6g}", f"{y:.6g}") for x, y in zip(curve.x, curve.y, strict=True) if np.isfinite(y)]
+            rows += [
+                (name, f"{x:.6g}", f"{y:.6g}")
+                for x, y in zip(curve.x, curve.y, strict=True)
+                if np.isfinite(y)
+            ]
         return ChartTable((self.tr("Line"), *self._axes), tuple(rows))
 
     def _ranges(self) -> tuple[tuple[float, float], tuple[float, float]]:
@@ -120,7 +126,9 @@ class LineChart(Chart):
         return self._draw_labels(painter, up, right)
 
     def _draw_curve(self, painter: QPainter, curve: Curve, along: Scale, up: Scale) -> None:
-        x = along.first + (curve.x - along.low) / ((along.high - along.low) or 1.0) * (along.last - along.first)
+        x = along.first + (curve.x - along.low) / ((along.high - along.low) or 1.0) * (
+            along.last - along.first
+        )
         to_y = (up.last - up.first) / ((up.high - up.low) or 1.0)
         if curve.low is not None and curve.high is not None:
             lows, highs = (up.first + (edge - up.low) * to_y for edge in (curve.low, curve.high))
@@ -146,7 +154,9 @@ class LineChart(Chart):
         good = np.isfinite(x) & np.isfinite(y)
         edges = np.flatnonzero(np.diff(np.concatenate([[0], good.astype(np.int8), [0]])))
         for start, end in zip(edges[::2], edges[1::2], strict=True):
-            painter.drawPolyline(QPolygonF([QPointF(a, b) for a, b in zip(x[start:end], y[start:end], strict=True)]))
+            painter.drawPolyline(
+                QPolygonF([QPointF(a, b) for a, b in zip(x[start:end], y[start:end], strict=True)])
+            )
 
     def _draw_labels(self, painter: QPainter, up: Scale, right: float) -> list[Mark]:
         ends = []
@@ -160,7 +170,12 @@ class LineChart(Chart):
             place = max(y, above + self.theme.px(15))
             above = place
             font = self.theme.font(Type.AXIS, strong=True)
-            rect = QRectF(right + self.theme.px(8), place - self.theme.px(8), drawing.width_of(font, curve.label) + 2, self.theme.px(16))
+            rect = QRectF(
+                right + self.theme.px(8),
+                place - self.theme.px(8),
+                drawing.width_of(font, curve.label) + 2,
+                self.theme.px(16),
+            )
             drawing.text(painter, rect, curve.label, font, QColor(curve.colour))
             marks.append(Mark(curve.key, rect, curve.tip))
         return marks

@@ -59,11 +59,25 @@ class RunChart(Chart):
 
     def table(self) -> ChartTable:
         """Return a row per run."""
-        headers = (self.tr("Run"), self.tr("Setup"), self.tr("Time of day"), self._axis, self.tr("Low"),
-                   self.tr("High"), self.tr("Left out because"))  # fmt: skip
+        headers = (
+            self.tr("Run"),
+            self.tr("Setup"),
+            self.tr("Time of day"),
+            self._axis,
+            self.tr("Low"),
+            self.tr("High"),
+            self.tr("Left out because"),
+        )
         rows = tuple(
-            (d.name, d.letter, clock(d.moment), f"{d.value:.6g}", f"{d.interval[0]:.6g}", f"{d.interval[1]:.6g}",
-             d.excluded)  # fmt: skip
+            (
+                d.name,
+                d.letter,
+                clock(d.moment),
+                f"{d.value:.6g}",
+                f"{d.interval[0]:.6g}",
+                f"{d.interval[1]:.6g}",
+                d.excluded,
+            )
             for d in self._dots
         )
         return ChartTable(headers, rows)
@@ -120,7 +134,9 @@ class RunChart(Chart):
             centre = QPointF(along(dot.moment), up(dot.value))
             colour = theme.colour("axis") if dot.excluded else QColor(dot.chip.fill)
             painter.setPen(QPen(colour, px(1.6)))
-            painter.drawLine(QPointF(centre.x(), up(dot.interval[0])), QPointF(centre.x(), up(dot.interval[1])))
+            painter.drawLine(
+                QPointF(centre.x(), up(dot.interval[0])), QPointF(centre.x(), up(dot.interval[1]))
+            )
             rect = QRectF(centre.x() - size / 2, centre.y() - size / 2, size, size)
             if dot.picked:
                 drawing.focus_frame(painter, theme, rect.adjusted(-px(4), -px(4), px(4), px(4)))

@@ -48,23 +48,37 @@ class ScatterChart(Chart):
     def table(self) -> ChartTable:
         """Return a row per run."""
         rows = tuple(
-            (p.key, p.letter, f"{p.x:.6g}", f"{p.y:.6g}", f"{p.interval[0]:.6g}", f"{p.interval[1]:.6g}") for p in self._points
+            (p.key, p.letter, f"{p.x:.6g}", f"{p.y:.6g}", f"{p.interval[0]:.6g}", f"{p.interval[1]:.6g}")
+            for p in self._points
         )
-        return ChartTable((self.tr("Run"), self.tr("Setup"), *self._axes, self.tr("Low"), self.tr("High")), rows)
+        return ChartTable(
+            (self.tr("Run"), self.tr("Setup"), *self._axes, self.tr("Low"), self.tr("High")), rows
+        )
 
     def draw(self, painter: QPainter, area: QRectF) -> list[Mark]:
         """Draw grid, zero line, whiskers and chips."""
         theme, px = self.theme, self.theme.px
         if not self._points:
-            drawing.text(painter, area, self.tr("Not known for these runs"), theme.font(), theme.colour("quiet"), drawing.CENTRE)
+            drawing.text(
+                painter,
+                area,
+                self.tr("Not known for these runs"),
+                theme.font(),
+                theme.colour("quiet"),
+                drawing.CENTRE,
+            )
             return []
-        low, high = padded(min(0.0, *(p.interval[0] for p in self._points)), max(0.0, *(p.interval[1] for p in self._points)))
+        low, high = padded(
+            min(0.0, *(p.interval[0] for p in self._points)), max(0.0, *(p.interval[1] for p in self._points))
+        )
         x_low, x_high = padded(min(p.x for p in self._points), max(p.x for p in self._points))
         top, bottom = area.top() + px(22), area.bottom() - px(42)
         count = max(2, int((bottom - top) / px(44)))
         step = tick_step(low, high, count)
         y_ticks = ticks(low, high, count)
-        names = [plain(tick, decimals_of(step), signed=True) if abs(tick) > step / 1e6 else "0" for tick in y_ticks]
+        names = [
+            plain(tick, decimals_of(step), signed=True) if abs(tick) > step / 1e6 else "0" for tick in y_ticks
+        ]
         gutter = max((drawing.width_of(theme.font(Type.AXIS), name) for name in names), default=0)
         left, right = area.left() + gutter + px(14), area.right() - px(8)
         along, up = Scale(x_low, x_high, left, right), Scale(low, high, bottom, top)
@@ -87,7 +101,9 @@ class ScatterChart(Chart):
         size = px(15)
         centre = QPointF(along(point.x), up(point.y))
         painter.setPen(QPen(QColor(point.chip.fill), px(1.4)))
-        painter.drawLine(QPointF(centre.x(), up(point.interval[0])), QPointF(centre.x(), up(point.interval[1])))
+        painter.drawLine(
+            QPointF(centre.x(), up(point.interval[0])), QPointF(centre.x(), up(point.interval[1]))
+        )
         rect = QRectF(centre.x() - size / 2, centre.y() - size / 2, size, size)
         if point.picked:
             drawing.focus_frame(painter, theme, rect.adjusted(-px(4), -px(4), px(4), px(4)))

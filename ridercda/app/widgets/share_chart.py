@@ -55,7 +55,13 @@ class ShareChart(Chart):
         marks = []
         for index, (name, share, tip) in enumerate(self._shares):
             line = QRectF(area.left(), area.top() + index * pitch, area.width(), pitch)
-            drawing.text(painter, QRectF(line.left(), line.top(), names + px(4), pitch), name, font, theme.colour("ink"))
+            drawing.text(
+                painter,
+                QRectF(line.left(), line.top(), names + px(4), pitch),
+                name,
+                font,
+                theme.colour("ink"),
+            )
             thick = min(px(14), pitch * 0.55)
             width = max(px(2), (right - left) * share / largest)
             path = QPainterPath()

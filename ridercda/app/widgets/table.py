@@ -21,6 +21,7 @@ from PySide6.QtCore import (
 from PySide6.QtGui import QColor, QGuiApplication, QKeyEvent, QKeySequence, QPainter, QPaintEvent
 from PySide6.QtWidgets import (
     QAbstractItemView,
+    QComboBox,
     QHeaderView,
     QStyledItemDelegate,
     QStyleOptionViewItem,
@@ -39,6 +40,7 @@ RAW_ROLE = Qt.ItemDataRole.UserRole  # SI value, for sorting
 CHIP_ROLE = Qt.ItemDataRole.UserRole + 1  # a Badge
 QUIET_ROLE = Qt.ItemDataRole.UserRole + 2  # whether the row steps back
 KEY_ROLE = Qt.ItemDataRole.UserRole + 3
+CHOICES_ROLE = Qt.ItemDataRole.UserRole + 4
 
 _NO_INDEX = QModelIndex()
 
@@ -55,6 +57,7 @@ class Column(Generic[Row]):
     edit: Callable[[Row, str], bool] | None = None  # pushes an edit; False refuses
     width: int = 0  # px at zoom 1; 0: as wide as its content
     header_tip: str = ""
+    choices: Callable[[Row], tuple[str, ...]] | None = None  # edited by choosing one of these
 
     @property
     def is_number(self) -> bool:
@@ -127,6 +130,8 @@ class TableModel(QAbstractTableModel, Generic[Row]):
             return self._quiet(row)
         if role == KEY_ROLE:
             return self._key(row)
+        if role == CHOICES_ROLE:
+            return column.choices(row) if column.choices else None
         if role == Qt.ItemDataRole.ToolTipRole:
             return column.tip(row) if column.tip else None
         if role == Qt.ItemDataRole.TextAlignmentRole:
@@ -209,10 +214,41 @@ class _Cells(QStyledItemDelegate):
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
         chip = QRectF(left, box.center().y() - side / 2, side, side)
         drawing.chip(painter, self._theme, chip, self._theme.chip(badge.index), badge.letter)
-        rest = QRectF(chip.right() + self._theme.px(8), box.top(), box.right() - chip.right() - self._theme.px(10), box.height())
+        rest = QRectF(
+            chip.right() + self._theme.px(8),
+            box.top(),
+            box.right() - chip.right() - self._theme.px(10),
+            box.height(),
+        )
         role = "quiet" if index.data(QUIET_ROLE) else "ink"
         drawing.text(painter, rest, str(words), self._theme.font(), QColor(self._theme.colour(role)))
         painter.restore()
+
+    def createEditor(self, parent: QWidget, option: QStyleOptionViewItem, index: Index) -> QWidget:
+        """Return a box where a cell is one of a few choices, else a line of text."""
+        choices = index.data(CHOICES_ROLE)
+        if not choices:
+            return super().createEditor(parent, option, index)
+        box = QComboBox(parent)
+        box.addItems(list(choices))
+        box.activated.connect(lambda: self.commitData.emit(box))
+        box.activated.connect(lambda: self.closeEditor.emit(box))
+        return box
+
+    def setEditorData(self, editor: QWidget, index: Index) -> None:
+        """Show what holds."""
+        if isinstance(editor, QComboBox):
+            editor.setCurrentText(str(index.data()))
+            editor.showPopup()
+        else:
+            super().setEditorData(editor, index)
+
+    def setModelData(self, editor: QWidget, model: QAbstractItemModel, index: Index) -> None:
+        """Push the edit."""
+        if isinstance(editor, QComboBox):
+            model.setData(index, editor.currentText())
+        else:
+            super().setModelData(editor, model, index)
 
     def sizeHint(self, option: QStyleOptionViewItem, index: Index) -> QSize:
         """Make room for the chip."""
@@ -264,7 +300,9 @@ class TableView(QTableView):
         header = self.horizontalHeader()
         last = self._proxy.columnCount() - 1
         for column in range(last + 1):
-            mode = QHeaderView.ResizeMode.Stretch if column == last else QHeaderView.ResizeMode.ResizeToContents
+            mode = (
+                QHeaderView.ResizeMode.Stretch if column == last else QHeaderView.ResizeMode.ResizeToContents
+            )
             header.setSectionResizeMode(column, mode)
         self.show_keys(self._kept)
 
@@ -286,7 +324,9 @@ class TableView(QTableView):
         for row in range(self._proxy.rowCount()):
             index = self._proxy.index(row, 0)
             if index.data(KEY_ROLE) in keys:
-                model.select(index, QItemSelectionModel.SelectionFlag.Select | QItemSelectionModel.SelectionFlag.Rows)
+                model.select(
+                    index, QItemSelectionModel.SelectionFlag.Select | QItemSelectionModel.SelectionFlag.Rows
+                )
                 last = index
         if last is not None:
             model.setCurrentIndex(last, QItemSelectionModel.SelectionFlag.NoUpdate)
@@ -303,7 +343,9 @@ class TableView(QTableView):
         if self._empty and not self._proxy.rowCount():
             painter = QPainter(self.viewport())
             area = QRectF(self.viewport().rect())
-            drawing.text(painter, area, self._empty, self._theme.font(), self._theme.colour("quiet"), drawing.CENTRE)
+            drawing.text(
+                painter, area, self._empty, self._theme.font(), self._theme.colour("quiet"), drawing.CENTRE
+            )
             painter.end()
 
     def picked_keys(self) -> tuple[Hashable, ...]:
@@ -319,7 +361,9 @@ class TableView(QTableView):
     def as_text(self) -> str:
         """Return the picked rows, or all where none is picked, as tab-separated text with headers."""
         model: QAbstractItemModel = self._proxy
-        rows = sorted(index.row() for index in self.selectionModel().selectedRows()) or range(model.rowCount())
+        rows = sorted(index.row() for index in self.selectionModel().selectedRows()) or range(
+            model.rowCount()
+        )
         columns = range(model.columnCount())
         lines = ["\t".join(str(model.headerData(c, Qt.Orientation.Horizontal) or "") for c in columns)]
         for row in rows:
