@@ -107,9 +107,9 @@ def fit_mixed(
     variances = np.exp(log_variance)
     pieces = _pieces(y, design, fixed, components, variances)
     _, information = _score(pieces, components, log_variance)
-    scale = np.outer(variances, variances)
-    by_log = np.linalg.pinv(information)
-    slopes: FloatArray = np.stack([pieces.weights @ c.structure @ pieces.weights.T for c in components])
+    scale: FloatArray = np.outer(variances, variances)
+    by_log: FloatArray = np.asarray(np.linalg.pinv(information), dtype=np.float64)
+    slopes = np.stack([pieces.weights @ c.structure @ pieces.weights.T for c in components])
     return MixedFit(pieces.coefficients, pieces.covariance, variances, by_log * scale, slopes, pieces.weights)
 
 

@@ -55,7 +55,7 @@ def remarks(
             )
             break
     for r, value in enumerate(residuals(pooled)):
-        if abs(value) > ODD_RUN and np.sum([x.setup == day.runs[r].setup for x in day.runs]) > 1:
+        if value is not None and abs(value) > ODD_RUN:
             found.append(
                 SolveWarning(
                     "run-disagrees",

@@ -158,17 +158,31 @@ def run_alone(fit: Fit, pooled: Pooled, run: int) -> tuple[float, float]:
     return float(value), float(np.sqrt(max(own + known + doubt, 0.0)))
 
 
-def residuals(pooled: Pooled) -> FloatArray:
-    """Return each run minus the mean of its setup, in standard errors of that difference, (runs,)."""
+def residuals(pooled: Pooled) -> tuple[float | None, ...]:
+    """Return each run minus the mean of its repeats, in standard errors of that difference; None without repeats.
+
+    Compared at the shared unknowns as found, so that a doubt all runs share moves none of them.
+    """
     f = pooled.figures
-    n = f.values.size
-    structure = np.zeros((n, n))
-    structure[: f.runs, : f.runs] = np.eye(f.runs)
-    total = f.covariance + pooled.drift + pooled.mixed.variances[0] * structure
-    rest = f.values - pooled.design @ pooled.mixed.coefficients
-    spread = total - pooled.design @ pooled.mixed.covariance @ pooled.design.T
-    own = np.sqrt(np.maximum(np.diag(spread)[: f.runs], 1e-30))
-    return np.asarray(rest[: f.runs] / own)
+    runs = slice(0, f.runs)
+    shared = slice(f.runs, f.values.size)
+    block = f.covariance[shared, shared]
+    gain = np.linalg.solve(block, f.covariance[shared, runs]).T if block.size else np.zeros((f.runs, 0))
+    value = f.values[runs] + gain @ (pooled.mixed.coefficients[pooled.shared] - f.values[shared])
+    spread = f.covariance[runs, runs] - gain @ f.covariance[shared, runs]
+    spread = spread + pooled.drift[runs, runs] + pooled.mixed.variances[0] * np.eye(f.runs)
+    setup = pooled.design[runs, : len(pooled.setups)].argmax(axis=1)
+    found: list[float | None] = []
+    for r in range(f.runs):
+        others = np.flatnonzero((setup == setup[r]) & (np.arange(f.runs) != r))
+        if not others.size:
+            found.append(None)
+            continue
+        line = np.zeros(f.runs)
+        line[r] = 1.0
+        line[others] = -1.0 / others.size
+        found.append(float(line @ value / np.sqrt(max(line @ spread @ line, 1e-30))))
+    return tuple(found)
 
 
 def without_run(pooled: Pooled, run: int) -> FloatArray | None:

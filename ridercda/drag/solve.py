@@ -241,7 +241,7 @@ def _runs(fitted: Fit, pooled: Pooled, apart: bool) -> tuple[RunEstimate, ...]:
                 wind_from=float(np.arctan2(east, north) % (2.0 * np.pi)) if headed else None,
                 excluded="",
                 cda=student_figure(value, error**2, 1e4, day.confidence) if apart else None,
-                against_repeats=float(odd[r]),
+                against_repeats=odd[r],
                 influence=influence,
             )
         )

@@ -35,6 +35,7 @@ def _parts(estimate: Estimate, session: Session) -> Iterator[RenderableType]:
     yield Text("")
     yield Text(answer(estimate, session), style="bold")
     yield Text("")
+    yield Text("CdA in m², differences against the baseline; runs in W, km/h and m/s", style="dim")
     yield _setups(estimate, session)
     if any(t.crr is not None for t in estimate.tyres):
         yield Text("")
@@ -59,13 +60,13 @@ def _setups(estimate: Estimate, session: Session) -> Table:
     speed = f" at {3.6 * estimate.reference_speed:.0f} km/h" if estimate.reference_speed else ""
     percent = f"{100 * estimate.confidence:.0f} %"
     table = Table(box=None, pad_edge=False, header_style="dim")
-    table.add_column("setup")
+    table.add_column("setup", max_width=34)
     table.add_column("runs", justify="right")
-    table.add_column(f"CdA{speed} [m²]", justify="right")
-    table.add_column(f"{percent} interval", justify="right")
-    table.add_column("against baseline [m²]", justify="right")
-    table.add_column(f"{percent} interval", justify="right")
-    table.add_column("verdict")
+    table.add_column(f"CdA{speed}", justify="right")
+    table.add_column(f"{percent} interval", justify="right", no_wrap=True)
+    table.add_column("difference", justify="right")
+    table.add_column(f"{percent} interval", justify="right", no_wrap=True)
+    table.add_column("verdict", no_wrap=True)
     base = session.baseline
     by_setup = {d.setup: d for d in estimate.differences if base is not None and d.against == base.id}
     for result in estimate.setups:
@@ -98,7 +99,7 @@ def _runs(estimate: Estimate, session: Session) -> Table:
     table = Table(box=None, pad_edge=False, header_style="dim")
     table.add_column("run")
     table.add_column("setup")
-    for heading in ("laps", "power [W]", "speed [km/h]", "wind [m/s]", "from", "CdA [m²]", "against repeats"):
+    for heading in ("laps", "power", "speed", "wind", "from", "CdA", "against repeats"):
         table.add_column(heading, justify="right")
     for run in estimate.runs:
         setup = called(session.setup(run.setup))
