@@ -84,11 +84,11 @@ class Chip:
 # it), then the same six at another lightness, hatched.
 _LIGHT_FILLS = (
     "#5b6372",
-    "#2f6fc0",
+    "#3d71c0",
     "#a7600c",
-    "#04563a",
-    "#640856",
-    "#3f3a00",
+    "#045637",
+    "#620458",
+    "#383100",
     "#2e3541",
     "#12427f",
     "#7a3f05",

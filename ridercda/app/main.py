@@ -6,6 +6,7 @@ from pathlib import Path
 
 from PySide6.QtCore import QTimer
 
+from ridercda.app import tasks
 from ridercda.app.application import Dress, application
 from ridercda.app.desk import build_desk
 from ridercda.app.settings import Settings
@@ -21,7 +22,7 @@ def run(path: Path | None) -> int:
     dress.setParent(window)
     window.show()
     QTimer.singleShot(0, desk.reader.start)
-    QTimer.singleShot(0, desk.solver.start)
+    QTimer.singleShot(0, lambda: desk.solver.request(tasks.warm_up))
     if path is not None:
         QTimer.singleShot(0, lambda: window.open_session(path))
     else:

@@ -120,7 +120,7 @@ class RideShelf(QObject):
             self._items[entry.id] = ShelfItem(entry, Shelved.MISSING, kept, message)
             return
         self._items[entry.id] = ShelfItem(entry, Shelved.READING, kept)
-        job = self._worker.request(tasks.read_ride, path, entry, self._document.session.utc_offset)
+        job = self._worker.request(tasks.read_ride, folder, entry)
         self._jobs[entry.id] = job
         job.progressed.connect(lambda done, total: self._on_job_progressed(entry, done, total))
         job.finished.connect(lambda ride: self._on_job_finished(entry, ride))

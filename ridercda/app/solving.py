@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import time
-from dataclasses import replace
 from enum import Enum
 
 from PySide6.QtCore import QObject, QTimer, Signal
@@ -14,6 +13,7 @@ from ridercda.app.shelf import RideShelf, Shelved
 from ridercda.app.worker import Job, Worker
 from ridercda.drag.estimate import Estimate
 from ridercda.session.document import Session
+from ridercda.workspace.workspace import solve_key
 
 
 class State(Enum):
@@ -83,7 +83,7 @@ class Solving(QObject):
 
     def _start(self) -> None:
         session = self._document.session
-        key = _solve_key(session)
+        key = solve_key(session)
         if not session.runs or not session.setups:
             self._drop_job()
             self.estimate, self._solved = None, None
@@ -149,12 +149,3 @@ class Solving(QObject):
     def _tell(self, state: State, message: str = "") -> None:
         self.state, self.message = state, message
         self.changed.emit()
-
-
-def _solve_key(session: Session) -> Session:
-    """Return the session without what no estimate depends on."""
-    setups = tuple(
-        replace(s, name="", notes="", photos=(), letter="", power_cost=None) for s in session.setups
-    )
-    runs = tuple(replace(run, note="") for run in session.runs)
-    return replace(session, name="", setups=setups, runs=runs, courses=())

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from functools import cache
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -12,45 +13,52 @@ from ridercda.watch import Watch
 
 if TYPE_CHECKING:
     from ridercda.app.lap_traces import Laps
-    from ridercda.drag.day import Day
-
-
-def read_ride(watch: Watch, path: Path, entry: RideEntry, utc_offset: float | None) -> Ride:
-    """Return a ride of the session, read and repaired as the session says."""
-    from ridercda.rides.format import ReadOptions
-    from ridercda.rides.reader import read_ride as read
-
-    options = ReadOptions.with_columns(
-        entry.columns,
-        start=entry.start,
-        power_channel=entry.power_channel,
-        wheel_circumference=entry.wheel_circumference,
-    )
-    return read(path, options, watch)
+    from ridercda.workspace.workspace import Workspace
 
 
 class _Bench:
-    """What the solving process remembers between jobs: the rides it was sent, and the day it solved last."""
+    """What one process remembers between jobs: the memo, the rides it was sent and what it solved last."""
 
-    def __init__(self) -> None:
+    def __init__(self, workspace: Workspace) -> None:
+        self.workspace = workspace
         self.rides: dict[str, Ride] = {}
-        self.day: Day | None = None
-        self.estimate: Estimate | None = None
+        self.solved: tuple[Session, tuple[str, ...]] | None = None
+
+    def some(self, wanted: tuple[str, ...]) -> dict[str, Ride]:
+        return {ride: self.rides[ride] for ride in wanted}
 
 
-_BENCH = _Bench()
+@cache
+def _bench() -> _Bench:
+    from ridercda.workspace.workspace import Workspace, user_cache
+
+    return _Bench(Workspace(user_cache()))
+
+
+def read_ride(watch: Watch, folder: Path | None, entry: RideEntry) -> Ride:
+    """Return a ride of the session, read and repaired as the session says."""
+    return _bench().workspace.ride(folder or Path(), entry, watch)
 
 
 def solve(watch: Watch, session: Session, fresh: dict[str, Ride], wanted: tuple[str, ...]) -> Estimate:
     """Return the estimate of a session; `fresh` are rides this process has not seen, `wanted` those to be used."""
-    from ridercda.drag.prepare import prepare_day
-    from ridercda.drag.solve import solve as solve_day
+    bench = _bench()
+    bench.rides.update(fresh)
+    estimate = bench.workspace.estimate(session, bench.some(wanted), watch)
+    bench.solved = (session, wanted)
+    return estimate
 
-    _BENCH.rides.update(fresh)
-    day = prepare_day(session, {ride: _BENCH.rides[ride] for ride in wanted}, watch)
-    _BENCH.estimate = solve_day(day, watch)
-    _BENCH.day = day
-    return _BENCH.estimate
+
+def lap_traces(watch: Watch) -> Laps | None:
+    """Return the laps of the day last solved."""
+    from ridercda.app.lap_traces import laps_of
+
+    bench = _bench()
+    if bench.solved is None:
+        return None
+    session, wanted = bench.solved
+    rides = bench.some(wanted)
+    return laps_of(bench.workspace.day(session, rides, watch), bench.workspace.estimate(session, rides, watch))
 
 
 def propose_runs(watch: Watch, ride_id: str, ride: Ride, session: Session) -> tuple[Run, ...]:
@@ -58,10 +66,7 @@ def propose_runs(watch: Watch, ride_id: str, ride: Ride, session: Session) -> tu
     return ()
 
 
-def lap_traces(watch: Watch) -> Laps | None:
-    """Return the laps of the day last solved."""
-    from ridercda.app.lap_traces import laps_of
-
-    if _BENCH.day is None or _BENCH.estimate is None:
-        return None
-    return laps_of(_BENCH.day, _BENCH.estimate)
+def warm_up(watch: Watch) -> None:
+    """Import and compile what the first job of this process would wait for."""
+    import ridercda.drag.prepare
+    import ridercda.drag.solve  # noqa: F401

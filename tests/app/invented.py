@@ -7,6 +7,7 @@ from types import MappingProxyType
 
 import numpy as np
 
+from ridercda.app.desk import Desk
 from ridercda.drag.estimate import (
     Difference,
     Estimate,
@@ -200,3 +201,13 @@ def invented_estimate(session: Session, seed: int = 7) -> Estimate:
         if len(session.setups) > 1
         else (),
     )
+
+
+def opened(desk: Desk, setups: int = 3, runs: int = 12, rate: float = 1.0) -> Desk:
+    """Open an invented day on a desk."""
+    lengths = {} if runs <= 12 else {"lap": 120.0, "rest": 60.0}
+    session = invented_session(setups, runs, **lengths)
+    desk.document.open(session, None)
+    desk.shelf.put("am", invented_ride(runs, rate=rate, **lengths))
+    desk.solving.put(invented_estimate(session))
+    return desk

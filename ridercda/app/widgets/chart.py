@@ -13,6 +13,7 @@ from PySide6.QtGui import (
     QGuiApplication,
     QHelpEvent,
     QImage,
+    QImageWriter,
     QKeyEvent,
     QMouseEvent,
     QPainter,
@@ -96,8 +97,9 @@ class Chart(QWidget):
         image.setDevicePixelRatio(factor)
         image.fill(self.theme.colour("card"))
         self._draw_on(image)
-        if not image.save(str(path), b"PNG"):
-            raise OSError(f"{path}: cannot be written")
+        writer = QImageWriter(str(path), b"png")
+        if not writer.write(image):
+            raise OSError(f"{path}: cannot be written: {writer.errorString()}")
 
     def save_svg(self, path: Path) -> None:
         """Save as an SVG picture."""
