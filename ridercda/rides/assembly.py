@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from types import MappingProxyType
 
 import numpy as np
@@ -165,14 +165,10 @@ def _count_distance_from_start(channels: dict[str, FloatArray]) -> None:
 
 def _on_ride_clock(faults: Sequence[FaultSpan], first: float, start: float, end: float) -> tuple[Fault, ...]:
     placed = [
-        Fault(
-            each.fault.kind,
-            start if each.start is None else each.start - first,
-            end if each.end is None else each.end - first,
-            each.fault.channel,
-            each.fault.cause,
-            each.fault.repair,
-            each.fault.choices,
+        replace(
+            each.fault,
+            start=start if each.start is None else each.start - first,
+            end=end if each.end is None else each.end - first,
         )
         for each in faults
     ]

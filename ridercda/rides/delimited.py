@@ -1,7 +1,8 @@
 """Reader of delimited text: a header row names the channels, a unit may follow in brackets.
 
-Comma, semicolon or tab between cells; decimal point or comma; time in seconds, as h:mm:ss or as ISO 8601; lines
-that start with # before the header are skipped. Headers other than the canonical names are mapped by the options.
+Comma, semicolon or tab between cells; decimal point or comma; time in seconds, as h:mm:ss or as ISO 8601.
+Lines that start with # before the header are skipped. Other headers than the canonical names are mapped by the
+options.
 """
 
 from __future__ import annotations

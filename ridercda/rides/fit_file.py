@@ -122,7 +122,7 @@ def _messages(body: io.BytesIO, damage: list[str]) -> Iterator[FitDataMessage]:
     import fitdecode  # its profile takes 0.1 s to load
 
     # Checksums were looked at already; a processor would visit every field of every message.
-    reader = fitdecode.FitReader(
+    reader = fitdecode.FitReader(  # type: ignore[no-untyped-call]  # the decoder carries no types
         body,
         processor=None,
         check_crc=fitdecode.CrcCheck.DISABLED,

@@ -24,7 +24,7 @@ def one_sided(columns: Mapping[str, FloatArray]) -> str:
     Notes
     -----
     A one-sided meter doubles its leg. Where the file carries pedal figures it shows as a balance that never
-    leaves one side or 50 %, or as pedal figures of one leg only (common practice; a meter may also say nothing).
+    leaves one side or 50 %, or as pedal figures of one leg only (common practice; a meter may say nothing).
     """
     for name, noun in (
         ("torque_effectiveness", "torque effectiveness"),

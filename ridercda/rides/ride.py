@@ -94,6 +94,8 @@ class Fault:
         The repair taken; None when it was refused or there is none.
     choices : tuple of str
         The repairs on offer, the default first; "leave" keeps the data as recorded.
+    value : float or None
+        The figure found, where the repair takes one: a lag [s], a step [m], a factor on wheel distance [1].
     """
 
     kind: FaultKind
@@ -103,6 +105,7 @@ class Fault:
     cause: str
     repair: str | None = None
     choices: tuple[str, ...] = ()
+    value: float | None = None
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -113,8 +113,8 @@ def elements(
                     watch.step(stream.tell() - start, total)
     except DefusedXmlException as error:
         raise ReaderError(
-            "the file declares a document type or entities, which no ride file needs and which can be made to "
-            "exhaust a computer; it was refused"
+            "the file declares a document type or entities, which no ride file needs and which can be made "
+            "to exhaust a computer; it was refused"
         ) from error
     except ParseError as error:
         line = error.position[0]
