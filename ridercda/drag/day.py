@@ -30,6 +30,8 @@ class RunRecords:
     interval: FloatArray  # [s]
     power: FloatArray  # at the meter [W]
     speed: FloatArray  # of the wheel on the ground, as recorded times `DayRun.speed_factor` [m/s]
+    start_speed: FloatArray  # of the wheel at the start of the interval, from the means about it [m/s]
+    end_speed: FloatArray  # at its end [m/s]
     air_speed: FloatArray  # along the bike, at the rider's height; NaN without a sensor [m/s]
     position: FloatArray  # along the venue, at the middle of the interval [m]
     direction: FloatArray  # +1 with growing position, -1 against it

@@ -115,6 +115,15 @@ class VenueProfile:
     standard_error: FloatArray  # [m]
 
 
+@dataclass(frozen=True, slots=True)
+class Regression:
+    """The published regression on virtual elevation, beside the full model: least squares, no gusts."""
+
+    cda: Mapping[str, float]  # setup id -> [m^2]
+    crr: Mapping[str, float]  # tyre set -> [1]
+    residual_sd: float  # of a block's mean power [W]
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Estimate:
     """The answer of a solve.
@@ -142,6 +151,7 @@ class Estimate:
     tested_power: tuple[float, float] | None = None  # of the counted runs [W]
     method: str = ""
     profile: VenueProfile | None = None
+    regression: Regression | None = None
 
     def __post_init__(self) -> None:
         """Make the arrays read-only."""

@@ -32,9 +32,16 @@ def whole_laps(records: RunRecords, gates: Sequence[float]) -> RunRecords:
 
     def over_laps(values: FloatArray) -> FloatArray:
         """Return the integral of a record mean over each lap."""
+        if not count or not records.size:
+            return np.zeros(count)
         ends = np.concatenate([begin[:1], records.time])
         total = np.concatenate([[0.0], np.cumsum(values * records.interval)])
-        return np.diff(np.interp(edges, ends, total)) if count else np.zeros(0)
+        at_edges = np.interp(edges, ends, total)
+        # A gate lies between records: the nearest record's mean serves for the part of one outside.
+        at_edges += values[0] * np.minimum(edges - ends[0], 0.0) + values[-1] * np.maximum(
+            edges - ends[-1], 0.0
+        )
+        return np.diff(at_edges)
 
     time = np.diff(edges) if count else np.zeros(0)
     safe = np.maximum(time, 1e-9)
@@ -45,13 +52,18 @@ def whole_laps(records: RunRecords, gates: Sequence[float]) -> RunRecords:
     lost = over_laps(np.where(records.usable, 0.0, 1.0))
     covered = np.zeros(count, bool)
     if count and records.size:
-        covered = (edges[:-1] >= begin[0] - 0.5) & (edges[1:] <= records.time[-1] + 0.5)
+        covered = (edges[:-1] >= begin[0] - 1.0) & (edges[1:] <= records.time[-1] + 1.0)
     along = records.air_speed
     with_air = np.isfinite(along)
     seconds = over_laps(np.where(with_air, 1.0, 0.0))
     air_speed = np.where(
         seconds > 0.5 * time, over_laps(np.where(with_air, along, 0.0)) / np.maximum(seconds, 1e-9), np.nan
     )
+
+    at_gates = np.zeros(count + 1)
+    if count and records.size:
+        ends = np.concatenate([begin[:1], records.time])
+        at_gates = np.interp(edges, ends, np.concatenate([records.start_speed[:1], records.end_speed]))
 
     def mean(values: FloatArray) -> FloatArray:
         return over_laps(np.where(np.isfinite(values), values, 0.0)) / safe
@@ -61,6 +73,8 @@ def whole_laps(records: RunRecords, gates: Sequence[float]) -> RunRecords:
         interval=time,
         power=mean(power),
         speed=mean_speed,
+        start_speed=at_gates[:-1].copy(),
+        end_speed=at_gates[1:].copy(),
         air_speed=air_speed,
         position=np.zeros(count),
         direction=np.ones(count),

@@ -11,7 +11,7 @@ from ridercda.drag import innovations as at
 from ridercda.drag import priors
 from ridercda.drag.day import Day
 from ridercda.drag.profile import VenueNodes, profile_evidence
-from ridercda.session.document import RunKind
+from ridercda.session.document import RunKind, VenueKind
 
 FloatArray = npt.NDArray[np.float64]
 IntArray = npt.NDArray[np.int64]
@@ -68,15 +68,16 @@ def layout_of(day: Day, nodes: VenueNodes) -> Layout:
     mean = np.zeros(size)
     sd = np.zeros(size)  # 0 = known exactly
     mean[:runs], sd[:runs] = priors.CDA_MEAN, priors.CDA_SD
+    guess, guess_sd = rolling_guess(day)
     for i, known in enumerate(day.tyres):
-        mean[crr.start + i] = priors.CRR_MEAN if known.crr is None else known.crr
-        sd[crr.start + i] = priors.CRR_SD if known.crr is None else (known.crr_sd or 0.0)
+        mean[crr.start + i] = guess if known.crr is None else known.crr
+        sd[crr.start + i] = guess_sd if known.crr is None else (known.crr_sd or 0.0)
         mean[temperature.start + i] = known.temperature_coefficient
         sd[temperature.start + i] = known.temperature_coefficient_sd
     sd[slope] = priors.SPEED_SLOPE_SD
     sd[scale] = day.power_scale_sd
     sd[offset], sd[drift] = priors.POWER_OFFSET_SD, priors.POWER_DRIFT_SD
-    sd[lag] = priors.POWER_LAG_SD
+    sd[lag] = 0.0 if day.flat else priors.POWER_LAG_SD  # whole laps know no lag
     sd[warm] = priors.TYRE_WARM_UP_SD
     if any(np.isfinite(run.records.air_speed).any() for run in day.runs):
         sd[air] = priors.AIR_SPEED_FACTOR_SD
@@ -111,6 +112,13 @@ def layout_of(day: Day, nodes: VenueNodes) -> Layout:
         places[r, at.AIR_SPEED_FACTOR] = air
         places[r, at.LEADING :] = np.arange(slopes.start, slopes.stop)
     return Layout(mean, precision, free, places, runs, crr, scale, slope, lag, slopes)
+
+
+def rolling_guess(day: Day) -> tuple[float, float]:
+    """Return what one would guess of a Crr unseen, and the guess's standard deviation."""
+    if day.venue is VenueKind.TRACK:
+        return priors.TRACK_CRR_MEAN, priors.TRACK_CRR_SD
+    return priors.CRR_MEAN, priors.CRR_SD
 
 
 def repeats_precision(day: Day) -> FloatArray:

@@ -10,6 +10,7 @@ import numpy.typing as npt
 
 from ridercda.drag import priors
 from ridercda.drag.day import Day, DayRun, DayTyres, LeftOut, RunRecords
+from ridercda.drag.ends import speed_at_ends
 from ridercda.drag.laps import whole_laps
 from ridercda.drag.run_air import RunAir, air_of_run
 from ridercda.errors import SessionError
@@ -228,7 +229,7 @@ def _records(
         heading = np.zeros(dt.size)  # the air moves round with the riders: along the path everywhere
     curve = np.nan_to_num(np.abs(placed.curvature))
     curve = np.where((curve > 1e-4) & (curve < SHARPEST_PATH), curve, 0.0)
-    ends = _speed_at_ends(speed)
+    ends = speed_at_ends(speed)
     height = default("venue.mass_height")
     if session.venue and session.venue.mass_height is not None:
         height = session.venue.mass_height
@@ -255,6 +256,8 @@ def _records(
         interval=dt,
         power=power,
         speed=speed,
+        start_speed=ends[:-1].copy(),
+        end_speed=ends[1:].copy(),
         air_speed=air_speed,
         position=position,
         direction=placed.direction[1:].astype(float),
@@ -293,15 +296,6 @@ def braking(power: FloatArray, speed: FloatArray, interval: FloatArray) -> npt.N
         if hard[start:end].any():
             marked[max(start - 1, 0) : end + 1] = True
     return marked
-
-
-def _speed_at_ends(speed: FloatArray) -> FloatArray:
-    """Return the speed at the ends of the records, (n + 1,), from their means."""
-    filled = np.where(np.isfinite(speed), speed, 0.0)
-    ends = np.empty(filled.size + 1)
-    ends[1:-1] = 0.5 * (filled[1:] + filled[:-1])
-    ends[0], ends[-1] = (filled[0], filled[-1]) if filled.size else (0.0, 0.0)
-    return ends
 
 
 def _all_up_mass(session: Session) -> float:

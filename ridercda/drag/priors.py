@@ -13,7 +13,9 @@ CDA_SD: Final = 0.15  # [m^2]
 WORKING_SPREAD: Final = 0.01  # relative, between repeats, while the noise is being found
 CRR_MEAN: Final = 0.0045  # published bands of smooth to rough roads, 0.003 to 0.006 (from memory)
 CRR_SD: Final = 0.0025
-CRR_SEPARATED: Final = 0.5  # rolling counts as measured once its error is below this share of CRR_SD
+TRACK_CRR_MEAN: Final = 0.0022  # published band of tracks, 0.001 to 0.003 (from memory)
+TRACK_CRR_SD: Final = 0.0015
+CRR_SEPARATED: Final = 0.5  # rolling counts as measured once its error is below this share of the guess's
 
 SPEED_SLOPE_SD: Final = 0.03  # relative fall of CdA when speed doubles, by flow or by effort
 POWER_OFFSET_SD: Final = 1.0  # [W] zero offset left after zeroing
@@ -30,8 +32,8 @@ WIND_REPORT_SHARE: Final = 0.25  # of the reported speed, on top
 WIND_DRIFT_SD: Final = 0.6  # [m/s] each component, between runs an hour or more apart
 WIND_DRIFT_SHARE: Final = 0.2  # of the reported wind speed, on top
 WIND_DRIFT_HOURS: Final = 1.0  # [h]
-DRAGGED_AIR_SD: Final = 0.15  # [m/s] air carried round an indoor track
-DRAGGED_AIR_DRIFT_SD: Final = 0.03  # [m/s] between runs
+DRAGGED_AIR_SD: Final = 0.12  # [m/s] air carried round an indoor track
+DRAGGED_AIR_DRIFT_SD: Final = 0.02  # [m/s] between runs
 
 SLOPE_SD: Final = 0.10  # of the road's slope
 SLOPE_STEP_SD: Final = 0.025  # between knots 40 m apart; grows with the square root of the distance
@@ -41,7 +43,9 @@ ALTITUDE_SD: Final = 2.0  # [m] of a head unit's altitude profile after averagin
 ALTITUDE_DRIFT: Final = 3.0  # [m] slow error of that profile along the venue
 
 GUST_SD: Final = (0.5, 0.9)  # [m/s] median and log standard deviation
-GUST_MODEL_SD: Final = 0.05  # relative error of the gust strength found, because gusts are no exact such process
+GUST_MODEL_SD: Final = (
+    0.05  # relative error of the gust strength found, because gusts are no exact such process
+)
 GUST_TIME: Final = (11.0, 0.6)  # [s]
 POWER_NOISE: Final = (0.03, 0.8)  # relative
 SPEED_NOISE: Final = (0.03, 1.0)  # [m/s]

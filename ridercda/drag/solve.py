@@ -22,8 +22,10 @@ from ridercda.drag.estimate import (
     VenueProfile,
 )
 from ridercda.drag.lag import shift_power
+from ridercda.drag.layout import rolling_guess
 from ridercda.drag.likelihood import Fit, fit, model_of
 from ridercda.drag.oddities import leave_out_oddities
+from ridercda.drag.regression import disagreement, regress
 from ridercda.drag.remarks import remarks
 from ridercda.drag.repeats import Pooled, pool, residuals, run_alone, run_figures, without_run
 from ridercda.session.document import VenueKind
@@ -130,6 +132,8 @@ def _estimate(fitted: Fit, warnings: list[SolveWarning]) -> Estimate:
     powers = [_means(run)[0] for run in day.runs]
     density = float(np.mean([run.records.density.mean() for run in day.runs]))
     warnings += remarks(fitted, pooled, differences, setups, crr)
+    regression = regress(day)
+    warnings += disagreement(regression, differences)
     gust = None if day.flat else Gust(float(fitted.noise[at.GUST_SD]), float(fitted.noise[at.GUST_TIME]))
     return Estimate(
         confidence=day.confidence,
@@ -154,6 +158,7 @@ def _estimate(fitted: Fit, warnings: list[SolveWarning]) -> Estimate:
         tested_power=(min(powers), max(powers)),
         method=METHOD,
         profile=_profile(fitted),
+        regression=regression,
     )
 
 
@@ -181,7 +186,7 @@ def _told_apart(pooled: Pooled, day: Day) -> bool:
         if day.tyres[tyres].crr is not None:
             continue
         column = pooled.shared.start + pooled.figures.tyres.index(tyres)
-        if np.sqrt(pooled.covariance[column, column]) > priors.CRR_SEPARATED * priors.CRR_SD:
+        if np.sqrt(pooled.covariance[column, column]) > priors.CRR_SEPARATED * rolling_guess(day)[1]:
             return False
     return True
 
