@@ -12,7 +12,6 @@ from ridercda.app.document import SessionDocument
 from ridercda.app.shelf import RideShelf, Shelved
 from ridercda.app.worker import Job, Worker
 from ridercda.drag.estimate import Estimate
-from ridercda.session.document import Session
 from ridercda.workspace.workspace import solve_key
 
 

@@ -58,7 +58,9 @@ def lap_traces(watch: Watch) -> Laps | None:
         return None
     session, wanted = bench.solved
     rides = bench.some(wanted)
-    return laps_of(bench.workspace.day(session, rides, watch), bench.workspace.estimate(session, rides, watch))
+    return laps_of(
+        bench.workspace.day(session, rides, watch), bench.workspace.estimate(session, rides, watch)
+    )
 
 
 def propose_runs(watch: Watch, ride_id: str, ride: Ride, session: Session) -> tuple[Run, ...]:

@@ -12,9 +12,9 @@ import multiprocessing
 import queue
 import threading
 from multiprocessing.connection import Connection
-from typing import Any, cast
+from typing import Any
 
-from PySide6.QtCore import QObject, Qt, Signal
+from PySide6.QtCore import QObject, QTimer, Signal
 
 from ridercda.app.serving import Task, serve
 
@@ -28,7 +28,7 @@ class Job(QObject):
     faulted = Signal(str)  # our own fault: a traceback for the log
 
     def __init__(self, number: int, worker: Worker) -> None:
-        super().__init__(worker)
+        super().__init__()  # no parent: whoever waits for it keeps it
         self.number = number
         self._worker = worker
 
@@ -41,20 +41,22 @@ class Worker(QObject):
     """The other process, seen from here."""
 
     stopped_by_itself = Signal()
-    _arrived = Signal(int, object)  # generation, message
+    EVERY = 4  # ms between looks into the inbox while work is under way
 
     def __init__(self, name: str, parent: QObject | None = None) -> None:
         super().__init__(parent)
         self._name = name
         self._numbers = itertools.count(1)
         self._jobs: dict[int, Job] = {}
-        self._generation = 0
         self._process: multiprocessing.process.BaseProcess | None = None
         self._outbox: queue.SimpleQueue[Any] = queue.SimpleQueue()
         self._stops: Connection | None = None
         self._threads: list[threading.Thread] = []
         self._home: Connection | None = None
-        self._arrived.connect(self._on_arrived, Qt.ConnectionType.QueuedConnection)
+        # The listening thread touches no Qt object: it fills the inbox, and this timer empties it.
+        self._inbox: queue.SimpleQueue[Any] = queue.SimpleQueue()
+        self._timer = QTimer(self, interval=self.EVERY)
+        self._timer.timeout.connect(self._on_timer)
 
     @property
     def is_idle(self) -> bool:
@@ -65,7 +67,6 @@ class Worker(QObject):
         """Start the process, if it is not there."""
         if self._process is not None:
             return
-        self._generation += 1
         context = multiprocessing.get_context("spawn")
         self._home, far_home = context.Pipe()
         far_stops, self._stops = context.Pipe(duplex=False)
@@ -75,12 +76,10 @@ class Worker(QObject):
         self._process.start()
         far_home.close()
         far_stops.close()
-        self._outbox = queue.SimpleQueue()
-        generation, home, outbox = self._generation, self._home, self._outbox
+        self._outbox, self._inbox = queue.SimpleQueue(), queue.SimpleQueue()
+        inbox, outbox, home = self._inbox, self._outbox, self._home
         self._threads = [
-            threading.Thread(
-                target=self._listen, args=(generation, home), daemon=True, name=f"{self._name}-in"
-            ),
+            threading.Thread(target=_listen, args=(inbox, home), daemon=True, name=f"{self._name}-in"),
             threading.Thread(target=_post, args=(outbox, home), daemon=True, name=f"{self._name}-out"),
         ]
         for thread in self._threads:
@@ -91,6 +90,7 @@ class Worker(QObject):
         self.start()
         job = Job(next(self._numbers), self)
         self._jobs[job.number] = job
+        self._timer.start()
         self._outbox.put((job.number, task, arguments))
         return job
 
@@ -101,14 +101,13 @@ class Worker(QObject):
         if self._stops is not None:
             with contextlib.suppress(OSError, ValueError):
                 self._stops.send(job.number)
-        job.deleteLater()
 
     def stop(self) -> None:
         """End the process and the threads that talk to it."""
         if self._process is None:
             return
         process, self._process = self._process, None
-        self._generation += 1
+        self._timer.stop()
         self._outbox.put(None)
         process.terminate()
         process.join(5.0)
@@ -118,25 +117,20 @@ class Worker(QObject):
             self._home.close()
         if self._stops is not None:
             self._stops.close()
-        for job in self._jobs.values():
-            job.deleteLater()
         self._jobs.clear()
 
-    def _listen(self, generation: int, home: Connection) -> None:
-        try:
+    def _on_timer(self) -> None:
+        with contextlib.suppress(queue.Empty):
             while True:
-                self._arrived.emit(generation, home.recv())
-        except (EOFError, OSError):
-            with contextlib.suppress(RuntimeError):  # the window may be gone by now
-                self._arrived.emit(generation, None)
+                message = self._inbox.get_nowait()
+                if message is None:
+                    self._on_death()
+                    return
+                self._on_arrived(*message)
+        if not self._jobs:
+            self._timer.stop()
 
-    def _on_arrived(self, generation: int, message: object) -> None:
-        if generation != self._generation:
-            return
-        if message is None:
-            self._on_death()
-            return
-        number, what, content = cast("tuple[int, str, Any]", message)
+    def _on_arrived(self, number: int, what: str, content: Any) -> None:
         job = self._jobs.get(number)
         if job is None:
             return
@@ -150,7 +144,6 @@ class Worker(QObject):
             job.failed.emit(content)
         elif what == "fault":
             job.faulted.emit(content)
-        job.deleteLater()
 
     def _on_death(self) -> None:
         jobs = tuple(self._jobs.values())
@@ -172,3 +165,11 @@ def _post(outbox: queue.SimpleQueue[Any], home: Connection) -> None:
     with contextlib.suppress(OSError, ValueError):
         while (message := outbox.get()) is not None:
             home.send(message)
+
+
+def _listen(inbox: queue.SimpleQueue[Any], home: Connection) -> None:
+    """Put what arrives into the inbox; None once the other end is gone."""
+    with contextlib.suppress(EOFError, OSError):
+        while True:
+            inbox.put(home.recv())
+    inbox.put(None)

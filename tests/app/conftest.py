@@ -14,13 +14,13 @@ os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
 
 pytest.importorskip("PySide6", reason="the app extra is not installed")
 
-from PySide6.QtCore import QSettings  # noqa: E402
-from PySide6.QtWidgets import QApplication  # noqa: E402
+from PySide6.QtCore import QSettings
+from PySide6.QtWidgets import QApplication
 
-from ridercda.app.application import application  # noqa: E402
-from ridercda.app.desk import Desk, build_desk  # noqa: E402
-from ridercda.app.settings import Settings  # noqa: E402
-from ridercda.app.worker import Job, Worker  # noqa: E402
+from ridercda.app.application import application
+from ridercda.app.desk import Desk, build_desk
+from ridercda.app.settings import Settings
+from ridercda.app.worker import Job, Worker
 
 _HERE = Path(__file__).parent
 
@@ -92,5 +92,11 @@ def _nothing_left_open(qapp: QApplication) -> Iterator[None]:
 @pytest.fixture(autouse=True)
 def _own_folders(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     """Keep documents, state and cache of the user out of the tests."""
-    for name in ("XDG_STATE_HOME", "XDG_CONFIG_HOME", "XDG_CACHE_HOME", "XDG_DOCUMENTS_DIR", "RIDERCDA_CACHE"):
+    for name in (
+        "XDG_STATE_HOME",
+        "XDG_CONFIG_HOME",
+        "XDG_CACHE_HOME",
+        "XDG_DOCUMENTS_DIR",
+        "RIDERCDA_CACHE",
+    ):
         monkeypatch.setenv(name, str(tmp_path / name.lower()))

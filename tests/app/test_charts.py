@@ -55,7 +55,9 @@ def chart_of(kind: str, day: Desk) -> Chart:
         x = np.linspace(0.0, 2400.0, 50)
         y = np.sin(x / 300.0)
         y[20] = np.nan
-        lines.show_curves((Curve("one", x, y, "#3d71c0", label="one"),), "Along [m]", "Up [m]", with_zero=True)
+        lines.show_curves(
+            (Curve("one", x, y, "#3d71c0", label="one"),), "Along [m]", "Up [m]", with_zero=True
+        )
         return lines
     venue = VenueMap(day)
     venue.show_tracks(map_tracks(day))
@@ -68,7 +70,9 @@ def rows_of(path: Path) -> list[list[str]]:
 
 @pytest.mark.parametrize("kind", KINDS)
 @pytest.mark.parametrize("mode", [Mode.LIGHT, Mode.DARK])
-def test_every_picture_is_drawn_and_saved(kind: str, mode: Mode, day: Desk, qtbot: QtBot, tmp_path: Path) -> None:
+def test_every_picture_is_drawn_and_saved(
+    kind: str, mode: Mode, day: Desk, qtbot: QtBot, tmp_path: Path
+) -> None:
     day.theme.set_mode(mode)
     chart = chart_of(kind, day)
     qtbot.addWidget(chart)
@@ -78,12 +82,16 @@ def test_every_picture_is_drawn_and_saved(kind: str, mode: Mode, day: Desk, qtbo
     assert image.size() == QSize(1040, 600)
     ground = image.pixelColor(2, 2)
     drawn = sum(
-        image.pixelColor(x, y) != ground for x in range(0, image.width(), 3) for y in range(0, image.height(), 3)
+        image.pixelColor(x, y) != ground
+        for x in range(0, image.width(), 3)
+        for y in range(0, image.height(), 3)
     )
     assert drawn > 100  # of some 69,000 looked at: something is there
     chart.save_svg(tmp_path / "picture.svg")
-    root = ET.parse(tmp_path / "picture.svg").getroot()  # noqa: S314 - our own file
-    shapes = [each for each in root.iter() if each.tag.rpartition("}")[2] in ("path", "polyline", "text", "rect")]
+    root = ET.parse(tmp_path / "picture.svg").getroot()
+    shapes = [
+        each for each in root.iter() if each.tag.rpartition("}")[2] in ("path", "polyline", "text", "rect")
+    ]
     assert len(shapes) > 5
     chart.save_csv(tmp_path / "data.csv")
     rows = rows_of(tmp_path / "data.csv")
@@ -133,11 +141,18 @@ def test_pictures_are_walked_by_keyboard_and_picked(day: Desk, qtbot: QtBot) -> 
         QTest.keyClick(chart, Qt.Key.Key_Return)
     assert picked.args == ["2"]
     with qtbot.waitSignal(chart.picked) as picked:
-        QTest.mouseClick(chart, Qt.MouseButton.LeftButton, Qt.KeyboardModifier.NoModifier, chart.marks()[6].rect.center().toPoint())
+        QTest.mouseClick(
+            chart,
+            Qt.MouseButton.LeftButton,
+            Qt.KeyboardModifier.NoModifier,
+            chart.marks()[6].rect.center().toPoint(),
+        )
     assert picked.args == ["7"]
 
 
-def test_labels_of_axes_stay_inside_the_picture(day: Desk, qtbot: QtBot, monkeypatch: pytest.MonkeyPatch) -> None:
+def test_labels_of_axes_stay_inside_the_picture(
+    day: Desk, qtbot: QtBot, monkeypatch: pytest.MonkeyPatch
+) -> None:
     from ridercda.app.widgets import drawing
 
     seen: list[QRectF] = []

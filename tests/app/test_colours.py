@@ -13,9 +13,15 @@ THEMES = [pytest.param(LIGHT, LIGHT_CHIPS, id="light"), pytest.param(DARK, DARK_
 # for simulation of color vision deficiency," IEEE TVCG 15(6), 1291-1298, 2009, severity 1.0 (from memory).
 SIGHTS = {
     "normal": np.eye(3),
-    "protan": np.array([[0.152286, 1.052583, -0.204868], [0.114503, 0.786281, 0.099216], [-0.003882, -0.048116, 1.051998]]),
-    "deutan": np.array([[0.367322, 0.860646, -0.227968], [0.280085, 0.672501, 0.047413], [-0.011820, 0.042940, 0.968881]]),
-    "tritan": np.array([[1.255528, -0.076749, -0.178779], [-0.078411, 0.930809, 0.147602], [0.004733, 0.691367, 0.303900]]),
+    "protan": np.array(
+        [[0.152286, 1.052583, -0.204868], [0.114503, 0.786281, 0.099216], [-0.003882, -0.048116, 1.051998]]
+    ),
+    "deutan": np.array(
+        [[0.367322, 0.860646, -0.227968], [0.280085, 0.672501, 0.047413], [-0.011820, 0.042940, 0.968881]]
+    ),
+    "tritan": np.array(
+        [[1.255528, -0.076749, -0.178779], [-0.078411, 0.930809, 0.147602], [0.004733, 0.691367, 0.303900]]
+    ),
 }
 
 
@@ -42,11 +48,15 @@ def nearest(chips: tuple[Chip, ...], sight: np.ndarray) -> float:
 def test_contrast_of_black_and_white_is_21() -> None:
     assert contrast("#000000", "#ffffff") == pytest.approx(21.0)  # WCAG 2.2, definition of contrast ratio
     assert contrast("#777777", "#777777") == pytest.approx(1.0)
-    assert contrast("#767676", "#ffffff") == pytest.approx(4.54, abs=0.005)  # the grey known to just pass 4.5:1
+    assert contrast("#767676", "#ffffff") == pytest.approx(
+        4.54, abs=0.005
+    )  # the grey known to just pass 4.5:1
 
 
 @pytest.mark.parametrize(("roles", "chips"), THEMES)
-def test_every_letter_reaches_4_5_on_its_chip_and_every_chip_3_on_the_card(roles: Roles, chips: tuple[Chip, ...]) -> None:
+def test_every_letter_reaches_4_5_on_its_chip_and_every_chip_3_on_the_card(
+    roles: Roles, chips: tuple[Chip, ...]
+) -> None:
     assert len(chips) == 12
     assert len({chip.fill for chip in chips}) == 12
     for chip in chips:
@@ -56,7 +66,9 @@ def test_every_letter_reaches_4_5_on_its_chip_and_every_chip_3_on_the_card(roles
 
 @pytest.mark.parametrize(("roles", "chips"), THEMES)
 @pytest.mark.parametrize("role", ["ink", "quiet", "accent", "good", "caution", "bad"])
-def test_text_reaches_4_5_on_every_ground_it_stands_on(roles: Roles, chips: tuple[Chip, ...], role: str) -> None:
+def test_text_reaches_4_5_on_every_ground_it_stands_on(
+    roles: Roles, chips: tuple[Chip, ...], role: str
+) -> None:
     for ground in ("paper", "card", "chosen", "field", "hover"):
         assert contrast(getattr(roles, role), getattr(roles, ground)) >= 4.5, ground
 

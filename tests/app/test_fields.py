@@ -71,7 +71,9 @@ def test_what_is_wrong_is_said_while_typing_and_nothing_is_committed(desk: Desk,
 
 def test_an_empty_field_shows_what_is_assumed_and_why(desk: Desk, qtbot: QtBot) -> None:
     field = field_of(desk, qtbot, Kind.RATIO)
-    field.set_value(None, Assumed(0.977, "J. C. Martin et al., Validation of a model, J. Appl. Biomech. 14(3), 1998"))
+    field.set_value(
+        None, Assumed(0.977, "J. C. Martin et al., Validation of a model, J. Appl. Biomech. 14(3), 1998")
+    )
     assert field.line.text() == ""
     assert field.line.placeholderText() == "97.7 %"
     assert field.line.accessibleDescription() == "assumed: J. C. Martin et al. 1998"

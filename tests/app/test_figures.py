@@ -24,7 +24,13 @@ def test_no_interval_gives_no_decimals() -> None:
 
 
 @pytest.mark.parametrize(
-    ("seconds", "words"), [(45, "45\u00a0s"), (452, "8\u00a0min"), (7380, "2\u00a0h\u00a003\u00a0min"), (3600, "1\u00a0h\u00a000\u00a0min")]
+    ("seconds", "words"),
+    [
+        (45, "45\u00a0s"),
+        (452, "8\u00a0min"),
+        (7380, "2\u00a0h\u00a003\u00a0min"),
+        (3600, "1\u00a0h\u00a000\u00a0min"),
+    ],
 )
 def test_spans_read_at_once(seconds: float, words: str) -> None:
     assert duration(seconds) == words
