@@ -72,7 +72,7 @@ def assemble(records: Records, options: ReadOptions) -> Ride:
 
     Records without a time are left out, and those more than a month from the others; values that cannot be
     are NaN (not finite, ten million or more, latitude beyond the pole, the point 0° N 0° E that units write
-    before they have a fix); channels without any value are left out.
+    before they have a fix, a heart that does not beat); channels without any value are left out.
 
     Raises
     ------
@@ -95,6 +95,8 @@ def assemble(records: Records, options: ReadOptions) -> Ride:
     }
     _blank_impossible_positions(channels)
     _count_distance_from_start(channels)
+    if "heart_rate" in channels:  # zero is what units write without a strap
+        channels["heart_rate"][channels["heart_rate"] == 0] = np.nan
     channels = {
         name: channels[name] for name in CHANNELS if name in channels and np.isfinite(channels[name]).any()
     }

@@ -95,7 +95,7 @@ def find_frozen_channels(ride: Ride) -> list[Fault]:
                 faults.append(
                     Fault(
                         FaultKind.CHANNEL_FROZEN,
-                        float(ride.time[first]),
+                        float(ride.time[first + 1]),  # the first of the run may be a true reading
                         float(ride.time[last]),
                         name,
                         cause,

@@ -11,14 +11,14 @@ import numpy as np
 import numpy.typing as npt
 
 from ridercda.rides.ride import CHANNELS, Fault, FaultKind, FloatArray, Ride
-from ridercda.rides.spans import BoolArray, true_spans
+from ridercda.rides.spans import BoolArray, signed, true_spans
 from ridercda.rides.thresholds import FEW_OUT_OF_ORDER
 
 Decide = Callable[[Fault], Fault]
 """From a fault with its choices to the same fault with the repair taken."""
 
 _DROP, _SORT, _SHIFT = "drop", "sort", "shift"
-_MERGE, _FIRST, _LAST = "merge", "keep-first", "keep-last"
+_SPREAD, _MERGE, _FIRST, _LAST = "spread", "merge", "keep-first", "keep-last"
 
 
 def mend_clock(ride: Ride, decide: Decide) -> tuple[Ride, tuple[Fault, ...]]:
@@ -67,7 +67,7 @@ def _mend_stray(ride: Ride, decide: Decide, faults: list[Fault]) -> Ride:
                 float(time[first : last + 1].min()),
                 float(time[first : last + 1].max()),
                 "",
-                f"{records} out of order: the clock jumps by {time[first] - time[max(first - 1, 0)]:+.0f} s and back",
+                f"{records} out of order: the clock jumps by {signed(time[first] - time[max(first - 1, 0)], 0)} s and back",
                 choices=(_SORT, _DROP) if fits else (_DROP,),
             )
         )
@@ -132,7 +132,8 @@ def _mend_set_back(ride: Ride, decide: Decide, faults: list[Fault]) -> Ride:
 
 
 def _mend_repeated(ride: Ride, decide: Decide, faults: list[Fault]) -> Ride:
-    time = ride.time
+    time = ride.time.copy()
+    usual = _usual_interval(time)
     same = np.diff(time) <= 0
     if not same.any():
         return ride
@@ -140,17 +141,24 @@ def _mend_repeated(ride: Ride, decide: Decide, faults: list[Fault]) -> Ride:
     kept = np.ones(time.size, bool)
     for first, end in true_spans(same):
         last = end + 1
+        room = _room_beside(time, first, last, usual)
+        cause = f"{last - first + 1} records bear the same time"
+        if room:
+            cause += f", the one {'before' if room < 0 else 'after'} it is missing"
         fault = decide(
             Fault(
                 FaultKind.CLOCK_DUPLICATE,
                 float(time[first]),
                 float(time[last]),
                 "",
-                f"{last - first + 1} records bear the same time",
-                choices=(_MERGE, _FIRST, _LAST),
+                cause,
+                choices=(_SPREAD, _MERGE, _FIRST, _LAST) if room else (_MERGE, _FIRST, _LAST),
             )
         )
         faults.append(fault)
+        if fault.repair == _SPREAD:
+            time[first if room < 0 else last] += room * usual
+            continue
         kept[first + 1 : last + 1] = False
         for values in channels.values():
             known = values[first : last + 1][np.isfinite(values[first : last + 1])]
@@ -158,7 +166,18 @@ def _mend_repeated(ride: Ride, decide: Decide, faults: list[Fault]) -> Ride:
                 values[first] = known.mean()
             elif fault.repair == _LAST:
                 values[first] = values[last]
-    return _selected(replace(ride, channels=MappingProxyType(channels)), np.flatnonzero(kept))
+    return _selected(replace(ride, time=time, channels=MappingProxyType(channels)), np.flatnonzero(kept))
+
+
+def _room_beside(time: FloatArray, first: int, last: int, usual: float) -> int:
+    """Return -1 or 1 where a pair can be spread because the record before or after it is missing, else 0."""
+    if last - first != 1:
+        return 0
+    if first > 0 and time[first] - time[first - 1] > 1.5 * usual:
+        return -1
+    if last + 1 < time.size and time[last + 1] - time[last] > 1.5 * usual:
+        return 1
+    return 0
 
 
 def _longest_rising(time: FloatArray) -> BoolArray:

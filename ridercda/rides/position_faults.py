@@ -7,7 +7,7 @@ import numpy as np
 from ridercda.rides import thresholds as limit
 from ridercda.rides.ground_track import GroundTrack, ground_track
 from ridercda.rides.ride import Fault, FaultKind, FloatArray, Ride
-from ridercda.rides.spans import IndexArray, scatter_of
+from ridercda.rides.spans import IndexArray, scatter_of, signed
 
 BLANK, SHIFT, LEAVE = "blank", "shift", "leave"
 CLUSTER = 5  # records within which steps of altitude belong together
@@ -69,12 +69,14 @@ def find_altitude_faults(ride: Ride) -> list[Fault]:
         largest = float(rise[first : last + 1][np.argmax(np.abs(rise[first : last + 1]))])
         start, end = float(ride.time[before]), float(ride.time[after])
         if last > first and abs(net) < 0.5 * abs(largest) + limit.ALTITUDE_STEP:
-            cause = f"Altitude leaves its line by {largest:+.1f} m and comes back within {end - start:.3g} s"
+            cause = (
+                f"Altitude leaves its line by {signed(largest)} m and comes back within {end - start:.3g} s"
+            )
             inside = float(ride.time[known[first + 1]]), float(ride.time[known[last]])
             fault = Fault(FaultKind.ALTITUDE_STEP, *inside, "altitude", cause, choices=(BLANK, LEAVE))
         else:
             way = float(run[first : last + 1].sum())
-            cause = f"Altitude steps by {net:+.1f} m within {end - start:.3g} s and {way:.0f} m of road"
+            cause = f"Altitude steps by {signed(net)} m within {end - start:.3g} s and {way:.0f} m of road"
             choices = (SHIFT, LEAVE)
             fault = Fault(FaultKind.ALTITUDE_STEP, start, end, "altitude", cause, choices=choices, value=net)
         faults.append(fault)

@@ -46,3 +46,8 @@ def scatter_of(values: FloatArray) -> float:
     if not known.size:
         return float("nan")
     return 1.4826 * float(np.median(np.abs(known - np.median(known))))
+
+
+def signed(value: float, decimals: int = 1) -> str:
+    """Return a number with its sign, a true minus for a negative one."""
+    return f"{value:+.{decimals}f}".replace("-", "−")

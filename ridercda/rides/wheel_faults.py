@@ -11,7 +11,7 @@ from ridercda.rides.ground_track import GroundTrack, ground_track
 from ridercda.rides.lag import power_lag
 from ridercda.rides.notes import NO_SPEED_SENSOR, SPEED_FROM_SENSOR
 from ridercda.rides.ride import Fault, FaultKind, FloatArray, Ride
-from ridercda.rides.spans import BoolArray, IndexArray, scatter_of
+from ridercda.rides.spans import BoolArray, IndexArray, scatter_of, signed
 
 SCALE, LEAVE = "scale", "leave"
 _HOUR = 3600.0
@@ -53,7 +53,7 @@ def find_circumference_faults(ride: Ride) -> list[Fault]:
     if not np.isfinite(error):
         return []
     hours = _by_hour(pieces)
-    told = ", ".join(f"{100 * (value - 1):+.2f} %" for value, _ in hours)
+    told = ", ".join(f"{signed(100 * (value - 1), 2)} %" for value, _ in hours)
     drift = _drift(hours)
     if drift is not None:
         cause = f"Wheel distance drifts against position, hour by hour: {told} is missing from the wheel"
