@@ -102,6 +102,17 @@ def consult(day: SyntheticDay, spec: DaySpec) -> OracleEstimate:
     )
 
 
+def block_table(
+    day: SyntheticDay, spec: DaySpec
+) -> tuple[FloatArray, FloatArray, npt.NDArray[np.int64], FloatArray]:
+    """Return the day's blocks for a regression package: y, columns (air per setup, rolling), run, air energy."""
+    setups = [s.id for s in spec.setups]
+    runs = [_blocks(day, spec, k, setups.index(run.setup)) for k, run in enumerate(day.truth.runs)]
+    x, y, _, _ = _stacked(runs, len(setups), spec)
+    run = np.concatenate([np.full(len(r.y), k) for k, r in enumerate(runs)])
+    return y, x, run, np.concatenate([r.air for r in runs])
+
+
 def _answer(value: float, error: float, quantile: float) -> Answer:
     return Answer(value, error, value - quantile * error, value + quantile * error)
 

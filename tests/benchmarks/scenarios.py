@@ -10,7 +10,17 @@ import numpy as np
 
 from ridercda.synthetic.rider import Holds, RiderSpec, Spread
 from ridercda.synthetic.sensors import AirProbeSpec, SensorSpec, SpeedSource
-from ridercda.synthetic.spec import REFERENCE_DAY, TRACK_DAY, AirSpec, DaySpec, LapTimes, SetupSpec, TyreSpec
+from ridercda.synthetic.spec import (
+    REFERENCE_DAY,
+    THREE_SETUPS,
+    TRACK_DAY,
+    AirSpec,
+    Cycle,
+    DaySpec,
+    LapTimes,
+    SetupSpec,
+    TyreSpec,
+)
 from ridercda.synthetic.venue import OutAndBackVenue
 from ridercda.synthetic.wind import (
     CALM,
@@ -104,7 +114,11 @@ SCENARIOS: tuple[Scenario, ...] = (
         _always(_with_speed(BASE, source=SpeedSource.GPS, noise=0.05)),
     ),
     Scenario("one-speed", "230 W all day, Crr known to 5 %; windy", _one_speed),
-    Scenario("two-by-two", "two setups, two repeats, windy", _always(replace(BASE, order="ABBA"))),
+    Scenario(
+        "two-by-two",
+        "two setups, two repeats, another power each lap; windy",
+        _always(replace(BASE, setups=THREE_SETUPS[:2], order="ABBA", cycle=Cycle.LAP)),
+    ),
     Scenario(
         "confounded",
         "all of A, then B, then C, with a drift of 0.5 % an hour; windy",

@@ -16,6 +16,10 @@ from ridercda.synthetic.truth import Truth
 FloatArray = npt.NDArray[np.float64]
 
 
+# Said of every day without a weather report: no sign that something is wrong.
+EXPECTED = frozenset({"wind-unknown"})
+
+
 @dataclass(frozen=True, slots=True)
 class Shot:
     """One figure of one day: how far off, how wide, whether it held the truth; and the oracle's."""
@@ -129,7 +133,7 @@ class Row:
     days: int
     answered: float  # share of differences answered
     absolutes_answered: float  # share of days with every absolute
-    warned: float  # share of days with any warning
+    warned: float  # share of days with any warning but those that every such day gets
     differences: Tally | None
     absolutes: Tally | None
     rolling: Tally | None
@@ -148,7 +152,7 @@ def tally(days: list[DayScore]) -> Row:
         days=n,
         answered=sum(len(d.differences) for d in days) / sum(d.asked for d in days),
         absolutes_answered=sum(1 for d in days if d.absolutes) / n,
-        warned=sum(1 for d in days if d.warnings) / n,
+        warned=sum(1 for d in days if set(d.warnings) - EXPECTED) / n,
         differences=_tally([s for d in days for s in d.differences]),
         absolutes=_tally([s for d in days for s in d.absolutes]),
         rolling=_tally([s for d in days for s in d.rolling]),

@@ -12,6 +12,7 @@ from ridercda.drag.prepare import prepare_day
 from ridercda.drag.solve import solve
 from ridercda.drag.verdict import Verdict
 from ridercda.errors import SolveError
+from ridercda.rides.repair import repair
 from ridercda.synthetic.day import SyntheticDay
 
 
@@ -30,11 +31,12 @@ class SolvedDay:
 
 
 def solve_day(day: SyntheticDay) -> SolvedDay:
-    """Prepare and solve a day."""
+    """Repair, prepare and solve a day, as the program does."""
     begin = time.perf_counter()
     middle = begin
     try:
-        prepared = prepare_day(day.session, day.rides)
+        rides = {name: repair(ride) for name, ride in day.rides.items()}
+        prepared = prepare_day(day.session, rides)
         middle = time.perf_counter()
         estimate = solve(prepared)
     except SolveError as error:

@@ -24,7 +24,8 @@ CdA in cm² (10⁻⁴ m²). *held 95 %*: share of 95 % intervals that held the t
 days allow. *oracle*: generalised least squares of 120 m blocks that knows the road, the mean wind and the
 strength of every noise; *width* is against the same oracle when it has to estimate the spread between runs.
 Bias and RMS of absolutes leave the meter's scale out, which nothing can see; whether they held the truth counts
-it. *false lower*: share of days with a pair called lower that is not.
+it. *false lower*: share of days with a pair called lower that is not. *warned*: of anything but that there is no
+weather report.
 """
 
 
