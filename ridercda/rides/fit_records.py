@@ -67,6 +67,8 @@ _DEVELOPER_NAMES: Mapping[str, str] = MappingProxyType(
         "heartrate": "heart_rate",
     }
 )
+# The decoder gives names to two values of the balance that are flags, not names, by the profile's own list.
+_NAMED_BALANCES: Mapping[str, float] = MappingProxyType({"mask": 0x7F, "right": 0x80})
 _NATIVE_UNITS: Mapping[str, tuple[float, float]] = MappingProxyType(
     {
         "semicircles": (np.pi / 2**31, 0.0),
@@ -217,6 +219,8 @@ def _source(field: FieldData) -> FieldSource:
 
 
 def _number(value: object) -> float:
+    if isinstance(value, str):
+        return _NAMED_BALANCES.get(value, np.nan)
     return float(value) if isinstance(value, int | float) and abs(value) < 1e300 else np.nan
 
 
@@ -279,7 +283,7 @@ def _in_si(values: FloatArray, unit: str, channel: str, field: str) -> FloatArra
     if unit in _NATIVE_UNITS:
         scale, offset = _NATIVE_UNITS[unit]
         return np.asarray(values * scale + offset)
-    if not unit or unit in {"m", "m/s", "W", "watts", "Pa"}:
+    if not unit:
         return values.copy()
     try:
         return conversion(unit, CHANNEL_KINDS[channel]).to_si(values)
