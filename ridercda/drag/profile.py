@@ -43,16 +43,17 @@ class VenueNodes:
             scaled = np.clip(scaled, 0.0, float(self.gaps))
             first = np.minimum(np.floor(scaled).astype(np.int64), self.gaps - 1)
         t = scaled - first
-        share = (
-            np.stack([(1 - t) ** 3, 3 * t**3 - 6 * t**2 + 4, 3 * (t**2 + t - t**3) + 1, t**3], axis=1) / 6.0
-        )
+        basis = [(1 - t) ** 3, 3 * t**3 - 6 * t**2 + 4, 3 * (t**2 + t - t**3) + 1, t**3]
+        share: FloatArray = np.stack(basis, axis=1, dtype=np.float64) * (1.0 / 6.0)
         acts = first[:, None] + np.arange(4)
-        return (acts - 1) % self.count if self.closed else acts, np.asarray(share, dtype=np.float64)
+        if self.closed:
+            acts = (acts - 1) % self.count
+        return acts, share
 
     @property
     def knots(self) -> FloatArray:
         """Positions of the knots, the end of an open venue included. [m]"""
-        return self.spacing * np.arange(self.gaps if self.closed else self.gaps + 1)
+        return self.spacing * np.arange(self.gaps if self.closed else self.gaps + 1, dtype=np.float64)
 
     def slope(self, coefficients: FloatArray, position: FloatArray) -> FloatArray:
         """Return the slope at positions along the venue."""
@@ -69,6 +70,7 @@ class VenueNodes:
         return np.concatenate([np.zeros((1, self.count)), np.cumsum(steps, axis=0)])
 
     def _design(self, position: FloatArray) -> FloatArray:
+        """Return the weights of all coefficients at positions, shape (n, count)."""
         acts, share = self.place(position)
         matrix = np.zeros((position.size, self.count))
         np.add.at(matrix, (np.arange(position.size)[:, None], acts), share)
