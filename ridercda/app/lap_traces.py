@@ -1,19 +1,16 @@
-"""Each lap's virtual elevation at the estimate's figures, and the profile the laps share (no Qt).
-
-Virtual elevation after R. Chung, "Estimating CdA with a power meter," 2012 (from memory): the rise that explains
-the measured power at the drag area and rolling resistance taken.
-"""
+"""Each lap's virtual elevation at the estimate's figures, and the profile the laps share (no Qt)."""
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
 
-from ridercda.drag.day import Day, DayRun
+from ridercda.drag.day import Day
 from ridercda.drag.estimate import Estimate, RunEstimate
-from ridercda.physics.rolling import bearing_power
+from ridercda.drag.virtual_elevation import virtual_elevation
 
 FloatArray = npt.NDArray[np.float64]
 GRID = 240  # points of the shared profile
@@ -50,12 +47,13 @@ def laps_of(day: Day, estimate: Estimate) -> Laps | None:
         setup = day.setups[run.setup]
         if setup not in levels or day.tyres[run.tyres].id not in crr or run.id not in found:
             continue
-        rise = _rise(run, found[run.id], levels[setup], crr[day.tyres[run.tyres].id], day)
+        rolling = crr[day.tyres[run.tyres].id]
+        risen = virtual_elevation(run, levels[setup], rolling, _wind(found[run.id]), day.gravity)
         for lap in range(run.laps):
             inside = run.records.lap == lap
             if inside.sum() < 10:
                 continue
-            elevation = np.cumsum(np.nan_to_num(rise[inside]))
+            elevation = risen[inside]
             position = _within_lap(run.records.position[inside], day.venue_length)
             whole = (position >= 0.0) & (position <= day.venue_length)
             raw.append((run.id, lap, run.records.time[inside][whole], position[whole], elevation[whole]))
@@ -92,22 +90,8 @@ def _within_lap(position: FloatArray, length: float) -> FloatArray:
     return place
 
 
-def _rise(run: DayRun, figure: RunEstimate, cda: float, crr: float, day: Day) -> FloatArray:
-    """Return the rise over each record interval that explains its power. [m]"""
-    records = run.records
-    speed = records.speed * records.path_ratio
-    distance = speed * records.interval
-    along = speed.copy()
-    if figure.wind_speed is not None and figure.wind_from is not None:
-        against = figure.wind_speed * np.cos(figure.wind_from - records.heading)
-        along = speed + np.where(np.isfinite(against), against, 0.0)
-    along = np.where(np.isfinite(records.air_speed), records.air_speed, along)
-    power = np.where(records.power > 0.0, records.power * run.efficiency, records.power)
-    air = 0.5 * records.density * cda * along * np.abs(along) * distance
-    rolling = crr * run.mass * day.gravity * records.load * records.speed * records.interval
-    ends = np.concatenate([[speed[0]], 0.5 * (speed[1:] + speed[:-1]), [speed[-1]]])
-    kinetic = 0.5 * (run.mass + run.rotating_mass) * np.diff(ends**2)
-    energy = (power - bearing_power(records.speed)) * records.interval - air - rolling - kinetic
-    energy += records.lean_power * records.interval
-    rise: FloatArray = energy / (run.mass * day.gravity)
-    return rise
+def _wind(figure: RunEstimate) -> tuple[float, float]:
+    """Return the components the wind comes from, east and north; still air where it is not known. [m/s]"""
+    if figure.wind_speed is None or figure.wind_from is None:
+        return 0.0, 0.0
+    return figure.wind_speed * math.sin(figure.wind_from), figure.wind_speed * math.cos(figure.wind_from)

@@ -39,6 +39,11 @@ class LapTraces(QObject):
         self._job = self._worker.request(tasks.lap_traces)
         self._job.finished.connect(self._on_job_finished)
 
+    @property
+    def is_busy(self) -> bool:
+        """Whether the laps are being worked out."""
+        return self._job is not None
+
     def _drop(self) -> None:
         if self._job is not None:
             self._job.cancel()

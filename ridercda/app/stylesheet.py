@@ -37,6 +37,9 @@ QPushButton[main="true"]:hover { background: $accent_hover; }
 QPushButton[main="true"]:focus { border: 1px solid $ink; }
 QPushButton[main="true"]:disabled { background: $hairline; color: $quiet; }
 QPushButton[flush="true"] { padding: ${s4}px 0; border: 0; }
+QPushButton[dropdown="true"] { padding-right: ${s16}px; }
+QPushButton::menu-indicator { image: url($arrow); width: ${s12}px; height: ${s12}px;
+  subcontrol-origin: padding; subcontrol-position: right center; }
 QPushButton[flush="true"]:hover { background: transparent; color: $ink; }
 QPushButton[flush="true"]:focus { color: $ink; }
 QPushButton[framed="true"] { border: 1px solid $hairline; background: $card; }

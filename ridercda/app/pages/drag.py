@@ -57,7 +57,7 @@ class DragPage(Page):
         layout = QVBoxLayout(self.content)
         layout.setContentsMargins(0, 0, 0, 0)
         layout.setSpacing(px(8))
-        layout.addWidget(self._answer, 5)
+        layout.addWidget(self._answer, 4)
         layout.addLayout(line)
         layout.addWidget(self._evidence, 5)
         layout.addWidget(self._diagnostics, 5)
@@ -87,7 +87,7 @@ class DragPage(Page):
         self._influence = TableModel[drag_view.InfluenceRow]((), key=lambda r: r.run)
         table = TableView(self.theme, self._influence)
         table.keys_picked.connect(lambda keys: self.desk.selection.pick_runs(keys))
-        self._influence_card = Card(self.theme, self.tr("If a run were left out"))
+        self._influence_card = Card(self.theme, self.tr("Left out, a run would move"))
         self._influence_card.body.addWidget(table)
         self._influence_table = table
         row.add(self._influence_card, self.tr("Influence"), 40)
@@ -104,6 +104,10 @@ class DragPage(Page):
         self._switch.setText(self.tr("Back to the evidence") if on else self.tr("Diagnostics"))
         self._evidence.setVisible(not on)
         self._diagnostics.setVisible(on)
+
+    def show_diagnostics(self, *, on: bool) -> None:
+        """Show diagnostics instead of the evidence, or go back."""
+        self._switch.setChecked(on)
 
     def blank(self) -> Blank | None:
         """Say what is missing for a figure."""

@@ -229,7 +229,7 @@ def influence(
             _tr("Run"), lambda row: row.run, raw=lambda row: _run_order(row.run), chip=lambda row: row.badge
         ),
         Column(
-            _tr("against repeats [σ]"),
+            _tr("vs repeats [σ]"),
             lambda row: "–" if row.against_repeats is None else plain(row.against_repeats, 1, signed=True),
             raw=lambda row: row.against_repeats,
         ),
@@ -247,7 +247,7 @@ def _moves_column(setup_id: str, letter: str) -> Column[InfluenceRow]:
     def text(row: InfluenceRow) -> str:
         return plain(row.moves[setup_id], 4, signed=True) if setup_id in row.moves else "–"
 
-    return Column(_tr("moves {} by [m²]").format(letter), text, raw=lambda row: row.moves.get(setup_id))
+    return Column(_tr("{} by [m²]").format(letter), text, raw=lambda row: row.moves.get(setup_id))
 
 
 def _run_order(run: str) -> float | str:

@@ -51,7 +51,11 @@ class LapOverlay(QWidget):
         across = self.tr("Along the venue [{}]").format(units.symbol(Kind.HEIGHT))
         height = self.tr("Elevation [{}]").format(units.symbol(Kind.HEIGHT))
         if laps is None:
+            busy = self._desk.laps.is_busy or self._desk.solving.estimate is None
             for chart in self._charts:
+                chart.set_empty_text(
+                    self.tr("Laps follow with the estimate") if busy else self.tr("No laps to compare here")
+                )
                 chart.show_curves((), across, height)
             return
         badges = self._desk.badges()

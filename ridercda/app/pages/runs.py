@@ -64,6 +64,7 @@ class RunsPage(Page):
         self._card.body.addWidget(self._offer)
         self._card.body.addWidget(self._table, 1)
         self._leave_out = link(self.tr("Leave out"))
+        self._leave_out.setProperty("dropdown", True)
         self._leave_out.setMenu(reason_menu(self, lambda reason: runs.exclude(desk.selection.runs, reason)))
         self._count = link(self.tr("Count again"))
         self._count.clicked.connect(lambda: runs.include(desk.selection.runs))

@@ -66,6 +66,7 @@ class Card(QFrame):
         self.body.setSpacing(px(8))
         self.header.setSpacing(px(8))
         self._title.setFont(self.theme.font(Type.TEXT, strong=True))
+        self._title.setMinimumHeight(px(26))  # as high as with a button beside it
         self._note.setFont(self.theme.font(Type.AXIS))
 
 

@@ -66,6 +66,7 @@ class IntervalChart(Chart):
         """Show other figures."""
         if picture != self._picture:
             self._picture = picture
+            self.setMaximumHeight(self.theme.px(80 + max(3, len(picture.rows)) * 76))
             self.updateGeometry()
             self.update()
 

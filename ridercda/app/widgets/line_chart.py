@@ -47,6 +47,12 @@ class LineChart(Chart):
         self._pointer: float | None = None
         self._scale: Scale | None = None
         self._with_zero = False
+        self._empty = ""
+
+    def set_empty_text(self, words: str) -> None:
+        """Say what stands in the picture while there is nothing to draw."""
+        self._empty = words
+        self.update()
 
     def show_curves(
         self, curves: tuple[Curve, ...], across: str, up: str, *, with_zero: bool = False
@@ -88,6 +94,7 @@ class LineChart(Chart):
         """Draw grid, bands, lines, labels."""
         theme, px = self.theme, self.theme.px
         if not self._curves:
+            drawing.text(painter, area, self._empty, theme.font(), theme.colour("quiet"), drawing.CENTRE)
             return []
         (x_low, x_high), (low, high) = self._ranges()
         top, bottom = area.top() + px(22), area.bottom() - px(40)

@@ -43,6 +43,7 @@ KEY_ROLE = Qt.ItemDataRole.UserRole + 3
 CHOICES_ROLE = Qt.ItemDataRole.UserRole + 4
 
 _NO_INDEX = QModelIndex()
+_INDENT = "\u2003"
 
 
 @dataclass(frozen=True, slots=True)
@@ -146,7 +147,7 @@ class TableModel(QAbstractTableModel, Generic[Row]):
             return None
         column = self._columns[section]
         if role == Qt.ItemDataRole.DisplayRole:
-            return column.header
+            return _INDENT + column.header if section and not column.is_number else column.header
         if role == Qt.ItemDataRole.ToolTipRole:
             return column.header_tip or None
         if role == Qt.ItemDataRole.TextAlignmentRole:
@@ -191,6 +192,8 @@ class _Cells(QStyledItemDelegate):
     def initStyleOption(self, option: QStyleOptionViewItem, index: Index) -> None:
         """Set quiet text and room for the chip."""
         super().initStyleOption(option, index)
+        if index.column() and not index.data(Qt.ItemDataRole.TextAlignmentRole) & Qt.AlignmentFlag.AlignRight:
+            option.text = _INDENT + option.text  # apart from the figures set to the right before it
         if index.data(QUIET_ROLE):
             option.palette.setColor(option.palette.ColorRole.Text, self._theme.colour("quiet"))
 
@@ -365,7 +368,7 @@ class TableView(QTableView):
             model.rowCount()
         )
         columns = range(model.columnCount())
-        lines = ["\t".join(str(model.headerData(c, Qt.Orientation.Horizontal) or "") for c in columns)]
+        lines = ["\t".join(str(model.headerData(c, Qt.Orientation.Horizontal) or "").strip() for c in columns)]
         for row in rows:
             cells = []
             for column in columns:
