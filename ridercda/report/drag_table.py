@@ -35,7 +35,8 @@ def _parts(estimate: Estimate, session: Session) -> Iterator[RenderableType]:
     yield Text("")
     yield Text(answer(estimate, session), style="bold")
     yield Text("")
-    yield Text("CdA in m², differences against the baseline; runs in W, km/h and m/s", style="dim")
+    speed = f" at {3.6 * estimate.reference_speed:.0f} km/h" if estimate.reference_speed else ""
+    yield Text(f"CdA in m²{speed}, change against the baseline; runs in W, km/h and m/s", style="dim")
     yield _setups(estimate, session)
     if any(t.crr is not None for t in estimate.tyres):
         yield Text("")
@@ -57,14 +58,12 @@ def _parts(estimate: Estimate, session: Session) -> Iterator[RenderableType]:
 
 
 def _setups(estimate: Estimate, session: Session) -> Table:
-    speed = f" at {3.6 * estimate.reference_speed:.0f} km/h" if estimate.reference_speed else ""
     percent = f"{100 * estimate.confidence:.0f} %"
     table = Table(box=None, pad_edge=False, header_style="dim")
-    table.add_column("setup", max_width=34)
-    table.add_column("runs", justify="right")
-    table.add_column(f"CdA{speed}", justify="right")
+    table.add_column("setup", min_width=14, max_width=34)
+    table.add_column("CdA", justify="right", no_wrap=True)
     table.add_column(f"{percent} interval", justify="right", no_wrap=True)
-    table.add_column("difference", justify="right")
+    table.add_column("change", justify="right", no_wrap=True)
     table.add_column(f"{percent} interval", justify="right", no_wrap=True)
     table.add_column("verdict", no_wrap=True)
     base = session.baseline
@@ -80,7 +79,7 @@ def _setups(estimate: Estimate, session: Session) -> Table:
         if difference and difference.verdict:
             verdict = difference.verdict.value
             style = "bold" if difference.verdict in (Verdict.LOWER, Verdict.HIGHER) else ""
-        table.add_row(name, str(result.runs), value, interval, change, band, Text(verdict, style=style))
+        table.add_row(name, value, interval, change, band, Text(verdict, style=style))
     return table
 
 
