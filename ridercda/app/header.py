@@ -110,10 +110,10 @@ class Header(QWidget):
             label.setFont(theme.font())
         self._stop.setFont(theme.font())
         open_ = desk.document.is_open
-        for widget in (self._name, self._about, self._state, self._dot):
+        for widget in (self._name, self._state, self._dot):
             widget.setVisible(open_)
         self._name.setText(desk.session.name)
-        self._about.setText(" · ".join(self._facts()))
+        self._about.setText(" · ".join(self._facts()) if open_ else "")
         self._show_state()
 
     def _facts(self) -> list[str]:

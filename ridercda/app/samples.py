@@ -7,10 +7,16 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import platformdirs
+from PySide6.QtCore import QCoreApplication
 
 import ridercda
 from ridercda.errors import SessionError
+from ridercda.session.document import Session
 from ridercda.session.store import FILE_NAME, load_session
+
+
+def _tr(text: str) -> str:
+    return QCoreApplication.translate("Samples", text)
 
 
 @dataclass(frozen=True, slots=True)
@@ -18,7 +24,27 @@ class Sample:
     """An invented test day."""
 
     folder: Path
-    name: str
+    session: Session
+
+    @property
+    def name(self) -> str:
+        """What the day is called."""
+        return self.session.name
+
+    @property
+    def about(self) -> str:
+        """What was ridden, in a few words."""
+        session = self.session
+        words = {
+            "": "",
+            "loop": _tr("loop"),
+            "out-and-back": _tr("out and back"),
+            "track": _tr("indoor track"),
+            "road": _tr("road"),
+        }
+        place = words[session.venue.kind.value if session.venue else ""]
+        facts = _tr("{} setups, {} runs").format(len(session.setups), len(session.runs))
+        return f"{place} · {facts}" if place else facts
 
     @property
     def id(self) -> str:
@@ -43,7 +69,7 @@ def samples() -> tuple[Sample, ...]:
     found = []
     for path in sorted(root.glob(f"*/{FILE_NAME}")):
         try:
-            found.append(Sample(path.parent, load_session(path).session.name))
+            found.append(Sample(path.parent, load_session(path).session))
         except SessionError:
             continue
     return tuple(found)

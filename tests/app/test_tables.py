@@ -62,7 +62,7 @@ def test_the_faults_table_offers_repairs(day: Desk, qtbot: QtBot, qtmodeltester:
     qtmodeltester.check(model)
     qtmodeltester.check(page._model)
     assert model.rowCount() == 2
-    repair = model.index(0, 3)
+    repair = model.index(0, 2)
     assert model.flags(repair) & Qt.ItemFlag.ItemIsEditable
     assert not model.setData(repair, "no such repair")
     assert model.setData(repair, "leave")

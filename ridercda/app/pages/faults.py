@@ -23,6 +23,18 @@ class FaultRow:
     fault: Fault
 
 
+def _what(fault: Fault) -> str:
+    """Return the fault's name, with its channel where the name does not tell."""
+    words = fault.kind.value.replace("-", " ")
+    channel = fault.channel.replace("_", " ")
+    return (f"{words}: {channel}" if channel and channel not in words else words).capitalize()
+
+
+def _span(fault: Fault) -> str:
+    start, end = elapsed(fault.start), elapsed(fault.end)
+    return start if start == end else f"{start} – {end}"
+
+
 class FaultTable(QWidget):
     """Faults of the picked ride."""
 
@@ -39,13 +51,14 @@ class FaultTable(QWidget):
 
     def _columns(self) -> tuple[Column[FaultRow], ...]:
         return (
-            Column(self.tr("What"), lambda r: r.fault.kind.value.replace("-", " ").capitalize()),
+            Column(
+                self.tr("What"), lambda r: _what(r.fault), tip=lambda r: r.fault.channel.replace("_", " ")
+            ),
             Column(
                 self.tr("Where"),
-                lambda r: f"{elapsed(r.fault.start)} – {elapsed(r.fault.end)}",
+                lambda r: _span(r.fault),
                 raw=lambda r: r.fault.start,
             ),
-            Column(self.tr("Channel"), lambda r: r.fault.channel.replace("_", " ")),
             Column(
                 self.tr("Repair"),
                 lambda r: r.fault.repair or self.tr("left as recorded"),

@@ -52,10 +52,9 @@ class LapOverlay(QWidget):
         height = self.tr("Elevation [{}]").format(units.symbol(Kind.HEIGHT))
         if laps is None:
             busy = self._desk.laps.is_busy or self._desk.solving.estimate is None
+            words = self.tr("Laps follow with the estimate") if busy else self.tr("No laps to compare here")
             for chart in self._charts:
-                chart.set_empty_text(
-                    self.tr("Laps follow with the estimate") if busy else self.tr("No laps to compare here")
-                )
+                chart.set_empty_text(words)
                 chart.show_curves((), across, height)
             return
         badges = self._desk.badges()

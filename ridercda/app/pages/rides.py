@@ -74,8 +74,8 @@ class RidesPage(Page):
         layout = QHBoxLayout(self.content)
         layout.setContentsMargins(0, 0, 0, 0)
         layout.setSpacing(px(12))
-        layout.addLayout(left, 3)
-        layout.addWidget(self._map_card, 2)
+        layout.addLayout(left, 7)
+        layout.addWidget(self._map_card, 3)
 
     def _columns(self) -> tuple[Column[RideRow], ...]:
         return (

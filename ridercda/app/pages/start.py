@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from pathlib import Path
 
-from PySide6.QtCore import Qt, Signal
+from PySide6.QtCore import QRectF, Qt, Signal
 from PySide6.QtGui import QPainter, QPaintEvent, QPen
 from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
 
@@ -12,6 +13,7 @@ from ridercda.app.cautions import caution_texts
 from ridercda.app.desk import Desk
 from ridercda.app.samples import Sample, samples
 from ridercda.app.theme import Theme, Type
+from ridercda.app.widgets import drawing
 from ridercda.app.widgets.card import Card
 
 
@@ -102,7 +104,7 @@ class StartPage(QWidget):
         self._rows = []
         known = samples()
         for sample in known:
-            self._add(self._samples, sample.name, "", lambda s=sample: self._choose_sample(s))
+            self._add(self._samples, sample.name, sample.about, "", lambda s=sample: self._choose_sample(s))
         if not known:
             self._say(self._samples, self.tr("The samples did not come with this installation."))
         else:
@@ -112,7 +114,10 @@ class StartPage(QWidget):
             )
         folders = self._desk.settings.recent
         for folder in folders[:5]:
-            self._add(self._recent, folder.name, str(folder), lambda f=folder: self.recent_chosen.emit(f))
+            where = str(folder.parent)
+            self._add(
+                self._recent, folder.name, where, str(folder), lambda f=folder: self.recent_chosen.emit(f)
+            )
         if not folders:
             self._say(self._recent, self.tr("Sessions you open are listed here."))
         for card in (self._samples, self._recent):
@@ -121,10 +126,8 @@ class StartPage(QWidget):
     def _choose_sample(self, sample: Sample) -> None:
         self.sample_chosen.emit(sample)
 
-    def _add(self, card: Card, words: str, tip: str, act: object) -> None:
-        button = QPushButton(words)
-        button.setProperty("row", True)
-        button.setFont(self._desk.theme.font())
+    def _add(self, card: Card, words: str, note: str, tip: str, act: Callable[[], None]) -> None:
+        button = _Entry(self._desk.theme, words, note)
         button.setToolTip(tip)
         button.clicked.connect(act)
         card.body.addWidget(button)
@@ -135,9 +138,38 @@ class StartPage(QWidget):
         label.setProperty("quiet", True)
         label.setWordWrap(True)
         label.setFont(self._desk.theme.font(Type.AXIS))
-        label.setContentsMargins(self._desk.theme.px(12), self._desk.theme.px(4), 0, 0)
+        label.setContentsMargins(0, self._desk.theme.px(4), 0, 0)
         card.body.addWidget(label)
         self._rows.append(label)
+
+
+class _Entry(QPushButton):
+    """A name to press with a quiet line under it."""
+
+    def __init__(self, theme: Theme, words: str, note: str) -> None:
+        super().__init__()
+        self._theme, self._words, self._note = theme, words, note
+        self.setAccessibleName(words)
+        self.setAccessibleDescription(note)
+        self.setCursor(Qt.CursorShape.PointingHandCursor)
+        self.setMinimumHeight(theme.px(40))
+
+    def paintEvent(self, event: QPaintEvent) -> None:
+        """Draw both lines; under the pointer or the keyboard, a ground."""
+        px = self._theme.px
+        painter = QPainter(self)
+        painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+        area = QRectF(self.rect())
+        if self.underMouse() or self.hasFocus():
+            painter.setPen(self._theme.colour("accent") if self.hasFocus() else Qt.PenStyle.NoPen)
+            painter.setBrush(self._theme.colour("hover"))
+            painter.drawRoundedRect(area.adjusted(0.5, 0.5, -0.5, -0.5), px(6), px(6))
+            area.adjust(px(8), 0, -px(8), 0)
+        upper = QRectF(area.left(), area.center().y() - px(18), area.width(), px(20))
+        drawing.text(painter, upper, self._words, self._theme.font(), self._theme.colour("accent"))
+        small = self._theme.font(Type.AXIS)
+        drawing.text(painter, upper.translated(0, px(17)), self._note, small, self._theme.colour("quiet"))
+        painter.end()
 
 
 class _DropArea(QFrame):

@@ -187,14 +187,14 @@ class IntervalChart(Chart):
     ) -> None:
         theme, px = self.theme, self.theme.px
         side = min(px(22), pitch * 0.8)
-        lift = px(7) if pitch > px(36) else 0
+        lift = px(7) if pitch > px(44) else 0
         line = middle - lift
         chip_rect = QRectF(area.left() + px(4), line - side / 2, side, side)
         drawing.chip(painter, theme, chip_rect, row.chip, row.letter)
         words = QRectF(chip_rect.right() + px(10), line - px(12), left - chip_rect.right() - px(20), px(24))
         strong = theme.font(Type.TEXT, strong=True)
         drawing.text(painter, words, row.words, strong, theme.colour("ink"))
-        if row.note and pitch > px(36):
+        if row.note and pitch > px(44):
             under = words.translated(0, px(18))
             drawing.text(painter, under, row.note, theme.font(Type.AXIS), theme.colour("quiet"))
         if row.interval:

@@ -368,7 +368,9 @@ class TableView(QTableView):
             model.rowCount()
         )
         columns = range(model.columnCount())
-        lines = ["\t".join(str(model.headerData(c, Qt.Orientation.Horizontal) or "").strip() for c in columns)]
+        lines = [
+            "\t".join(str(model.headerData(c, Qt.Orientation.Horizontal) or "").strip() for c in columns)
+        ]
         for row in rows:
             cells = []
             for column in columns:
