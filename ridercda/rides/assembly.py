@@ -84,9 +84,12 @@ def assemble(records: Records, options: ReadOptions) -> Ride:
         raise ReaderError(
             "there is no record with a time in it; is it a course or a workout rather than a ride?"
         )
-    middle = float(np.median(records.clock[timed]))
+    known = np.sort(records.clock[timed])
+    middle = known[known.size // 2]  # one of them, where a median would lie between two
     with np.errstate(invalid="ignore", over="ignore"):
         timed &= np.abs(records.clock - middle) <= LONGEST
+    if not timed.any():
+        raise ReaderError("the times in it lie further apart than a ride lasts; the file is damaged")
     clock = records.clock[timed]
     first = float(clock[0])
     time = clock - first

@@ -13,6 +13,7 @@ import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
+from types import MappingProxyType
 from typing import BinaryIO
 
 import numpy as np
@@ -22,7 +23,7 @@ from ridercda.rides.assembly import UNIX_EPOCH, FaultSpan, LapSpan, Records, ass
 from ridercda.rides.format import CHANNEL_KINDS, USUAL_UNITS, Reader, ReadOptions, plain_name
 from ridercda.rides.packing import unpacked
 from ridercda.rides.ride import Fault, FaultKind, FloatArray, LapTrigger, Ride
-from ridercda.units import Kind, conversion
+from ridercda.units import Kind, conversion, find_unit
 from ridercda.units.durations import parse_clock
 from ridercda.watch import Watch
 
@@ -30,6 +31,7 @@ TIME, LAP = "time", "lap"
 CANONICAL_NAMES = (TIME, *CHANNEL_KINDS, LAP)
 """The headers that are understood without a mapping."""
 
+_KINDS: Mapping[str, Kind] = MappingProxyType({TIME: Kind.DURATION, **CHANNEL_KINDS})
 _DELIMITERS = "\t;,"
 _UNIT = re.compile(r"(?P<name>.*?)\s*(?:\[(?P<square>[^\]]*)\]|\((?P<round>[^)]*)\))\s*")
 _UNIX_TIME = 1e9  # a number this large is seconds since 1970, not since the start
@@ -231,11 +233,23 @@ def _parsed(text: str) -> _Table:
     return _Table(_headers(lines[0], delimiter), rows, number + 1)
 
 
-def _name_and_unit(header: str) -> tuple[str, str | None]:
+def _split_header(header: str) -> tuple[str, str | None]:
     match = _UNIT.fullmatch(header)
     if match is None:
         return header.strip(), None
     return match["name"].strip(), (match["square"] if match["square"] is not None else match["round"]).strip()
+
+
+def _unit_of(header: str, name: str) -> str | None:
+    """Return the unit a header names; round brackets may hold a remark instead."""
+    _, unit = _split_header(header)
+    if (
+        unit is not None
+        and header.rstrip().endswith(")")
+        and find_unit(unit, _KINDS.get(name, Kind.RATIO)) is None
+    ):
+        return None
+    return unit
 
 
 def _columns(headers: tuple[str, ...], options: ReadOptions) -> dict[str, _Column]:
@@ -246,22 +260,21 @@ def _columns(headers: tuple[str, ...], options: ReadOptions) -> dict[str, _Colum
         found[name] = _asked(name, wanted, headers)
     taken = {column.index for column in found.values()}
     for index, header in enumerate(headers):
-        name, unit = _name_and_unit(header)
-        canonical = plain_name(name)
+        canonical = plain_name(_split_header(header)[0])
         if index not in taken and canonical in CANONICAL_NAMES and canonical not in found:
-            found[canonical] = _Column(index, header, unit)
+            found[canonical] = _Column(index, header, _unit_of(header, canonical))
     return found
 
 
 def _asked(name: str, wanted: str, headers: tuple[str, ...]) -> _Column:
-    base, unit = _name_and_unit(wanted)
     for index, header in enumerate(headers):
         if header == wanted.strip():
-            return _Column(index, header, _name_and_unit(header)[1])
+            return _Column(index, header, _unit_of(header, name))
+    base, unit = _split_header(wanted)
     for index, header in enumerate(headers):
-        header_base, header_unit = _name_and_unit(header)
+        header_base, header_unit = _split_header(header)
         if plain_name(header_base) == plain_name(base) and (unit is None or header_unit in (None, unit)):
-            return _Column(index, header, unit or header_unit)
+            return _Column(index, header, unit or _unit_of(header, name))
     raise UnknownColumns(f"there is no column {wanted!r} to take as {name}", headers)
 
 
@@ -353,11 +366,9 @@ def _laps(clock: FloatArray, cells: Sequence[str]) -> list[LapSpan]:
         (time, cell) for time, cell in zip(clock.tolist(), cells, strict=True) if np.isfinite(time) and cell
     ]
     spans: list[LapSpan] = []
-    begin = None
-    for (time, cell), following in zip(timed, [*timed[1:], None], strict=True):
-        if begin is None:
-            begin = time
-        if following is None or following[1] != cell:
+    begin = timed[0][0] if timed else 0.0
+    for place, (time, cell) in enumerate(timed):
+        if place + 1 == len(timed) or timed[place + 1][1] != cell:
             spans.append(LapSpan(begin, time, LapTrigger.UNKNOWN))
             begin = time
     return spans

@@ -58,7 +58,8 @@ class RideCache:
         """
         path = self._path(sha256, options)
         try:
-            with np.load(path, allow_pickle=False) as kept:
+            # Opened here: the library forgets to close a file it cannot make sense of.
+            with path.open("rb") as file, np.load(file, allow_pickle=False) as kept:
                 ride = _from_arrays(kept)
         except _DAMAGED:
             return None

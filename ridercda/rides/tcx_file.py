@@ -112,7 +112,8 @@ def _lap(element: Element, last_point: float) -> _Lap:
 def _spans(laps: Sequence[_Lap]) -> list[LapSpan]:
     """Return laps that end where the next begins: the time a lap carries leaves pauses out."""
     spans = []
-    for lap, following in zip(laps, [*laps[1:], None], strict=True):
+    for place, lap in enumerate(laps):
+        following = laps[place + 1] if place + 1 < len(laps) else None
         if following is not None and following.start >= lap.start:
             end = following.start
         else:

@@ -10,6 +10,7 @@ import numpy as np
 import numpy.typing as npt
 
 from ridercda.physics.track import TrackShape
+from ridercda.runs.between_turns import place_between_turns
 from ridercda.runs.ground_pattern import (
     Pattern,
     correlation_by_shift,
@@ -23,7 +24,6 @@ from ridercda.runs.ground_pattern import (
 from ridercda.runs.lap_length import SHORTEST
 from ridercda.runs.placement import Placed, Placement, Scale
 from ridercda.runs.traced import Group, TracedRun
-from ridercda.runs.turns import turn_zones
 from ridercda.runs.wheel_distance import DistanceSource
 from ridercda.session.document import Venue, VenueKind
 
@@ -62,7 +62,7 @@ def place_by_closure(
         Of the known runs and the others.
     """
     if venue.kind is VenueKind.OUT_AND_BACK:
-        found = _between_turns(venue, rest, known)
+        found = place_between_turns(rest, venue.lap_length, known, mass)
     elif venue.kind is VenueKind.ROAD:
         found = _end_to_end(rest, known)
     else:
@@ -351,54 +351,6 @@ def _from_home_straight(
     half = length / 2
     shift = (peak(correlation, at) / bins * length + half / 2) % half - half / 2
     return {key: _shifted(placed, shift) for key, placed in runs.items()}
-
-
-def _between_turns(venue: Venue, rest: Sequence[TracedRun], known: Placement | None) -> Placement:
-    """Place runs on an out-and-back road between the U-turns that its speed shows."""
-    notes: list[str] = []
-    legs = [np.diff(run.turns) for run in rest]
-    gaps = np.concatenate(legs or [np.empty(0)])
-    length = known.length if known is not None else (venue.lap_length or 0.0) / 2
-    if not length and gaps.size:
-        length = float(np.median(gaps))
-    if not length:
-        notes.append("No U-turns and no lap_length: the road's length is not known.")
-        return Placement(None, 1.0, 1.0, {}, {}, tuple(notes))
-    trusted = known is not None or venue.lap_length is not None
-    runs, scales = {}, {}
-    for group in dict.fromkeys(run.group for run in rest):
-        own = [run for run in rest if run.group == group]
-        between = np.concatenate([np.diff(run.turns) for run in own])
-        between = between[np.abs(between / length - 1) < 0.05]
-        if between.size and trusted:
-            error = 3.0 / length / np.sqrt(between.size)
-            scales[group] = Scale(length / float(between.mean()), float(np.hypot(error, 2e-3)), "lap length")
-        else:
-            scales[group] = Scale(1.0, 1e-2, "")
-        for run in own:
-            runs[run.run.id] = _between(run, scales[group].factor, length)
-    notes.append("U-turns were found by speed alone: a stop on the road looks like one.")
-    return Placement(None, length, 0.0 if trusted else 1e-2 * length, runs, scales, tuple(notes))
-
-
-def _between(run: TracedRun, factor: float, length: float) -> Placed:
-    # The first leg of a ride is called out; every U-turn since then reversed it.
-    first = -1.0 if run.earlier_turns.size % 2 else 1.0
-    knots = np.concatenate((run.travelled[:1], run.turns, run.travelled[-1:]))
-    signs = first * np.where(np.arange(knots.size - 1) % 2, -1.0, 1.0)
-    path = factor * np.concatenate(([0.0], np.cumsum(np.diff(knots) * signs)))
-    if run.turns.size:
-        ends = np.where(signs[:-1] > 0, length, 0.0)
-        offset = float(np.median(ends - path[1:-1]))
-    else:
-        since = factor * float(run.travelled[0] - run.earlier_turns[-1]) if run.earlier_turns.size else 0.0
-        offset = since if first > 0 else length - since
-    return Placed(
-        station=np.interp(run.travelled, knots, path) + offset,
-        direction=signs[np.searchsorted(run.turns, run.travelled, side="left")],
-        standard_error=np.full(run.time.size, 5.0),
-        off_venue=turn_zones(run.turns, run.travelled, run.speed, run.power),
-    )
 
 
 def _end_to_end(rest: Sequence[TracedRun], known: Placement | None) -> Placement:

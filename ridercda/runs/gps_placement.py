@@ -20,7 +20,7 @@ from ridercda.watch import NO_WATCH, Watch
 FloatArray = npt.NDArray[np.float64]
 
 ROUNDS = 3  # of drawing the line and placing the runs on it
-STRAY = 35.0  # [m] mean distance from the line beyond which a run was ridden elsewhere
+STRAY = 25.0  # [m] mean distance from the line beyond which a run was ridden elsewhere
 GIVEN_LENGTH_ERROR = 1e-3  # relative standard error of a lap length as people measure it; common practice
 DRAWN_LENGTH_ERROR = 1e-3  # the same of a line drawn through fixes, besides their noise; common practice
 END_OF_ROAD = 40.0  # [m] over which the lanes of a U-turn part
@@ -80,13 +80,20 @@ def place_loop_by_fixes(
     line, lying, scales = _settle(line, lying, watch)
     zero = _gate_station(lying[0], scales)
     stretch, error, basis = _true_scale(
-        line.length, line.arc_length(0.0, line.length), lap_length, _fix_error(lying, line), notes
+        line.length,
+        line.pace(_stations(lying, scales)) * line.length,
+        lap_length,
+        _fix_error(lying, line),
+        notes,
     )
     return _told(line, lying, scales, (zero, stretch, error, basis), lap=True, notes=notes)
 
 
 def place_road_by_fixes(
-    runs: Sequence[TracedRun], lap_length: float | None, watch: Watch = NO_WATCH
+    runs: Sequence[TracedRun],
+    guides: Sequence[TracedRun | RideTrace],
+    lap_length: float | None,
+    watch: Watch = NO_WATCH,
 ) -> Placement | None:
     """Place runs along an open road, ridden one way or there and back; None without a usable run.
 
@@ -94,6 +101,9 @@ def place_road_by_fixes(
     ----------
     runs : sequence of TracedRun
         With fixes.
+    guides : sequence of TracedRun or RideTrace
+        The longest draws the line first: runs where they cover the road, whole rides where each is
+        further on.
     lap_length : float, optional
         There and back, if known. [m]
     watch : Watch
@@ -104,7 +114,7 @@ def place_road_by_fixes(
         Station 0 is the near end: where runs turn to go out again, else the lowest station ridden.
     """
     notes: list[str] = []
-    guide = max(runs, key=lambda run: (run.length, run.run.id))
+    guide = max(guides, key=lambda path: float(np.ptp(path.travelled)))
     path = _signed_path(guide, guide.travelled)
     good = np.isfinite(guide.east)
     low, high = float(path[good].min()), float(path[good].max())
@@ -118,8 +128,9 @@ def place_road_by_fixes(
     near, far = _ends(lying, scales, line)
     # At a U-turn the two lanes part and the line drawn between them is shorter than the way ridden.
     inset = min(END_OF_ROAD, 0.25 * (far - near))
-    inner = (near + inset, far - inset)
-    drawn = line.arc_length(*inner) / (inner[1] - inner[0]) * (far - near)
+    seen = _stations(lying, scales)
+    seen = seen[(seen > near + inset) & (seen < far - inset)]
+    drawn = line.pace(seen) * (far - near)
     turned_at_both = near > -np.inf and _turns_at_both_ends(lying, scales, near, far)
     known = lap_length / 2 if lap_length is not None and turned_at_both else None
     stretch, error, basis = _true_scale(far - near, drawn, known, _fix_error(lying, line), notes)
@@ -127,9 +138,10 @@ def place_road_by_fixes(
     return replace(placement, length=(far - near) * stretch, length_error=error * (far - near) * stretch)
 
 
-def _signed_path(run: TracedRun, travelled: FloatArray) -> FloatArray:
+def _signed_path(run: TracedRun | RideTrace, travelled: FloatArray) -> FloatArray:
     """Return distance ridden with its sign reversed at each U-turn, 0 at the first record."""
-    knots = np.concatenate((run.travelled[:1], run.turns, run.travelled[-1:]))
+    inside = (run.turns > run.travelled[0]) & (run.turns < run.travelled[-1])
+    knots = np.concatenate((run.travelled[:1], run.turns[inside], run.travelled[-1:]))
     legs = np.diff(knots) * (-1.0) ** np.arange(knots.size - 1)
     return np.interp(travelled, knots, np.concatenate(([0.0], np.cumsum(legs))))
 
@@ -276,6 +288,10 @@ def _true_scale(
         return by_length, abs(gap) / 2, "lap length"
     a, b = GIVEN_LENGTH_ERROR**-2, fixes_error**-2
     return (a * by_length + b * by_fixes) / (a + b), float((a + b) ** -0.5), "both"
+
+
+def _stations(lying: Sequence[_Lying], scales: dict[Group, tuple[float, float]]) -> FloatArray:
+    return np.concatenate([scales[run.traced.group][0] * run.path + run.offset for run in lying])
 
 
 def _gate_station(run: _Lying, scales: dict[Group, tuple[float, float]]) -> float:

@@ -12,8 +12,8 @@ import numpy.typing as npt
 from ridercda.physics.track import TrackShape
 from ridercda.rides.ride import Ride
 from ridercda.runs.closure_placement import place_by_closure
-from ridercda.runs.gps_placement import place_loop_by_fixes, place_road_by_fixes
 from ridercda.runs.fixes import plane_of
+from ridercda.runs.gps_placement import place_loop_by_fixes, place_road_by_fixes
 from ridercda.runs.placement import Placed, Placement, Scale
 from ridercda.runs.records import counted
 from ridercda.runs.reference_line import ReferenceLine
@@ -191,6 +191,10 @@ def _spans(runs: Sequence[TracedRun], traces: Mapping[str, RideTrace]) -> list[R
     return spans
 
 
+def _with_fixes(spans: Sequence[RideTrace]) -> list[RideTrace]:
+    return [span for span in spans if np.isfinite(span.east).mean() > 1 / 3]
+
+
 def _placed(
     session: Session, venue: Venue, runs: Sequence[TracedRun], spans: Sequence[RideTrace], watch: Watch
 ) -> Placement:
@@ -202,8 +206,10 @@ def _placed(
         if placement is None and venue.kind is VenueKind.LOOP:
             notes = ("The recorded positions do not close a loop.",)
     elif fixed:
-        given = venue.lap_length if venue.kind is VenueKind.OUT_AND_BACK else None
-        placement = place_road_by_fixes(fixed, given, watch)
+        out_and_back = venue.kind is VenueKind.OUT_AND_BACK
+        given = venue.lap_length if out_and_back else None
+        guides: Sequence[TracedRun | RideTrace] = fixed if out_and_back else _with_fixes(spans)
+        placement = place_road_by_fixes(fixed, guides, given, watch)
     at_hand = placement.runs if placement is not None else {}
     rest = [run for run in runs if run.run.id not in at_hand and (placement is None or not run.fixed)]
     if not rest and placement is not None:

@@ -46,17 +46,22 @@ class ReferenceLine:
         """Range of the station. [m]"""
         return self.step * (self.east.size if self.closed else self.east.size - 1)
 
-    def arc_length(self, low: float, high: float) -> float:
-        """Return the length of the drawn line between two stations, or all round a closed one. [m]"""
-        pace = np.hypot(self.d_east, self.d_north)
-        if self.closed:
-            return float(pace.mean() * self.length)
-        station = self.start + self.step * np.arange(pace.size)
-        within = np.linspace(low, high, max(int((high - low) / self.step), 2))
-        pace = np.interp(within, station, pace)
-        return float((pace.mean() - 0.5 * (pace[0] + pace[-1]) / pace.size) * pace.size / (pace.size - 1)) * (
-            high - low
-        )
+    def pace(self, seen: FloatArray) -> float:
+        """Return the drawn line's metres per metre of station, over the stretches near some stations.
+
+        Parameters
+        ----------
+        seen : ndarray, shape (n,)
+            Stations; stretches farther than 10 m from all of them do not count. [m]
+        """
+        reach = round(10.0 / self.step)
+        nodes = np.round((seen - self.start) / self.step).astype(np.int64)
+        m = self.east.size
+        nodes = nodes % m if self.closed else nodes[(nodes >= 0) & (nodes < m)]
+        near = np.zeros(m + 2 * reach, bool)
+        for shift in range(2 * reach + 1):
+            near[nodes + shift] = True
+        return float(np.hypot(self.d_east, self.d_north)[near[reach : m + reach]].mean())
 
     def heading(self, station: FloatArray) -> FloatArray:
         """Return the direction of growing station, clockwise from north, 0 to 2π. [rad]"""
@@ -143,7 +148,7 @@ def draw_line(
         scale = max(float(np.median(off)), 0.05) if off.size else 1.0
         weight = np.minimum(1.0, 2.0 * scale / np.maximum(off, 1e-9))
         coefficients = _solve(station, east, north, weight, lo, h, spans, penalty)
-    nodes = start + step * np.arange(steps if closed else steps + 1)
+    nodes = start + step * np.arange(steps if closed else steps + 1, dtype=np.float64)
     values = [
         _spline_at(_derivative(coefficients[:, axis].copy(), h, order), nodes, lo, h, 3 - order)
         for order in range(3)

@@ -97,27 +97,48 @@ def turns_by_speed(travelled: FloatArray, speed: FloatArray, leg: float | None) 
 
     Notes
     -----
-    A turn is slower than 60 % of the usual speed. Of two spells nearer to each other than 60 % of a leg the
-    slower one counts. A U-turn and a stop look alike here.
+    A turn is slower than 60 % of the usual speed. With the leg known, a slow spell counts only where another lies
+    one leg away: a stop for a drink does not. Of two spells nearer to each other than 60 % of a leg the one that
+    lies a leg behind the turn before counts, else the one ridden through rather than the stop, else the
+    slower. Common practice.
     """
     moving = speed[speed > 1.0]
     if moving.size == 0:
         return np.empty(0)
     slow = speed < 0.6 * float(np.median(moving))
     edges = np.flatnonzero(np.diff(np.concatenate(([False], slow, [False])).astype(np.int8)))
-    apart = 0.6 * leg if leg is not None else 150.0
-    found: list[tuple[float, float]] = []
+    spells: list[tuple[float, float]] = []
     for first, last in zip(edges[::2], edges[1::2], strict=True):
         if first == 0 or last == speed.size:
             continue  # setting off and rolling out are no turns
         k = first + int(np.argmin(speed[first:last]))
-        here = (float(travelled[k]), float(speed[k]))
-        if found and here[0] - found[-1][0] < apart:
-            if here[1] < found[-1][1]:
-                found[-1] = here
-        else:
+        # A speed belongs to the middle of the interval before its record.
+        spells.append((0.5 * float(travelled[k] + travelled[k - 1]), float(speed[k])))
+    if leg is not None and len(spells) > 2:
+        spells = _one_leg_apart(spells, leg)
+    apart = 0.6 * leg if leg is not None else 150.0
+    found: list[tuple[float, float]] = []
+    for here in spells:
+        if not found or here[0] - found[-1][0] >= apart:
             found.append(here)
+        elif leg is not None and len(found) > 1:
+            before = found[-2][0] + leg
+            found[-1] = min(found[-1], here, key=lambda spell: abs(spell[0] - before))
+        elif _is_rather_a_turn(here[1], found[-1][1]):
+            found[-1] = here
     return np.array([at for at, _ in found])
+
+
+def _one_leg_apart(spells: list[tuple[float, float]], leg: float) -> list[tuple[float, float]]:
+    at = np.array([place for place, _ in spells])
+    gap = np.abs(at[:, None] - at[None, :])
+    neighbours = (np.abs(gap - leg) < 0.06 * leg).sum(axis=1)
+    return [spell for spell, count in zip(spells, neighbours, strict=True) if count]
+
+
+def _is_rather_a_turn(speed: float, other: float) -> bool:
+    stands, other_stands = speed < 0.5, other < 0.5
+    return other_stands if stands != other_stands else speed < other
 
 
 def turn_zones(

@@ -253,7 +253,10 @@ class TextMap:
         """Return the table; what the hint holds already stays as it is there."""
         assert isinstance(value, Mapping)
         was = hint if isinstance(hint, dict) else {}
-        kept = {name: was[name] if str(was.get(name)) == text else text for name, text in value.items()}
+        kept = {
+            name: was[name] if name in was and str(was[name]) == text else text
+            for name, text in value.items()
+        }
         return InlineTable(kept)
 
 
