@@ -170,9 +170,10 @@ def running_mean_width(time: FloatArray, values: FloatArray) -> int | None:
 
     Notes
     -----
-    The change of a running mean over w records is (x[t] - x[t-w])/w. Where x has noise of its own, changes w records
-    apart correlate by up to -1/2, sharply at that lag alone; an unsmoothed channel shows this at lag 1. Smoothing
-    that weighs records differently has no such mark and is not found.
+    The change of a running mean over w records is (x[t] - x[t-w])/w. Its neighbours share nearly all of their
+    noise, so that changes correlate; with the noise of x the correlation falls evenly and turns up sharply at lag w,
+    where the value that came in goes out. Changes of an unsmoothed channel do not correlate. Smoothing that weighs
+    records differently has no such bend and is not found.
     """
     steps = np.diff(time)
     change = np.diff(values)
@@ -184,10 +185,12 @@ def running_mean_width(time: FloatArray, values: FloatArray) -> int | None:
     bound = 4.0 * 1.4826 * float(np.median(np.abs(change[good])))
     clipped = np.where(good, np.clip(change, -bound, bound), 0.0)
     correlation = _autocorrelation(clipped, good, limit.SMOOTHED_LONGEST + 1)
-    width = int(np.argmin(correlation[1:-1])) + 1
-    least = correlation[width]
-    sharp = least < min(correlation[width - 1], correlation[width + 1]) - 0.2
-    if width >= 2 and least < limit.SMOOTHED_CORRELATION and sharp and correlation[1] > -0.15:
+    bend = correlation[:-2] - 2.0 * correlation[1:-1] + correlation[2:]  # at lags 1, 2, ...
+    width = int(np.argmax(bend[1:])) + 2
+    others = np.delete(bend[1:], width - 2)
+    sharp = float(bend[width - 1])
+    needed = max(limit.SMOOTHED_BEND, 5.0 * float(np.sqrt(6.0 / good.sum())))
+    if correlation[1] > limit.SMOOTHED_CORRELATION and sharp > needed and sharp > 2.0 * float(others.max()):
         return width
     return None
 

@@ -209,7 +209,7 @@ def _fits_between(stray: FloatArray, ordered: FloatArray, usual: float) -> bool:
     ):
         return False
     room = np.minimum(stray - ordered[after - 1], ordered[after] - stray)
-    return bool((room >= 0.5 * usual).all())
+    return bool((room >= 0.75 * usual).all())
 
 
 def _usual_interval(time: FloatArray) -> float:

@@ -419,7 +419,7 @@ def test_power_that_comes_late(clean_ride: Ride, late: int) -> None:
 
 
 def test_shifting_moves_power_and_mixes_nothing(clean_ride: Ride) -> None:
-    raw = changed(clean_ride, power=np.roll(clean_ride.channels["power"], 2))
+    raw = changed(clean_ride, power=np.roll(clean_ride.channels["power"], 2), cadence=None)
     for lag in (1.6, 2.0, 2.4):  # to the nearest record
         ride = repair(raw, [Choice("power-lag", "shift", value=lag)])
         assert_array_equal(ride.channels["power"][:-2], clean_ride.channels["power"][:-2])
