@@ -139,7 +139,7 @@ def test_a_number_without_unit_is_si_and_an_angle_in_degrees() -> None:
         ),
         (
             SETUP + RIDE + "[[run]]\nid = '1'\nride = 'pm'\nsetup = 'base'\nstart = 10\n",
-            r"run\[1\]\.ride: there is no ride 'pm': did you mean 'am'\?",
+            r"run\[1\]\.ride: there is no ride 'pm': known: 'am'",
         ),
         (
             SETUP + RIDE + "[[run]]\nid = '1'\nride = 'am'\nsetup = 'xyz'\nstart = 10\n",
