@@ -10,7 +10,7 @@ import numpy as np
 import numpy.typing as npt
 
 from ridercda.runs.gps_track import FIX_TIME, WANDER, Passage, follow, locate_run, smooth_offset
-from ridercda.runs.lap_length import lap_from_fixes
+from ridercda.runs.lap_length import comes_back, lap_from_fixes
 from ridercda.runs.placement import Placed, Placement, Scale
 from ridercda.runs.reference_line import ReferenceLine, draw_line
 from ridercda.runs.traced import Group, RideTrace, TracedRun
@@ -72,9 +72,8 @@ def place_loop_by_fixes(
             )
     if lap is None:
         return None
-    guide = max(runs, key=lambda run: (run.length, run.run.id))
+    guide, good = _lapping(runs, lap)
     path = guide.travelled - guide.travelled[0]
-    good = np.isfinite(guide.east)
     line = draw_line(path[good], guide.east[good], guide.north[good], start=0.0, length=lap, closed=True)
     lying = _find(runs, line, notes)
     line, lying, scales = _settle(line, lying, watch)
@@ -136,6 +135,17 @@ def place_road_by_fixes(
     stretch, error, basis = _true_scale(far - near, drawn, known, _fix_error(lying, line), notes)
     placement = _told(line, lying, scales, (near, stretch, error, basis), lap=False, notes=notes)
     return replace(placement, length=(far - near) * stretch, length_error=error * (far - near) * stretch)
+
+
+def _lapping(runs: Sequence[TracedRun], lap: float) -> tuple[TracedRun, npt.NDArray[np.bool_]]:
+    """Return the run that laps the longest, and its fixes that are on the loop."""
+    back = [comes_back(run.travelled, run.east, run.north, lap) for run in runs]
+    ridden = [float(seen.mean()) * run.length for run, seen in zip(runs, back, strict=True)]
+    most = int(np.argmax(ridden))
+    if ridden[most] < lap:  # no run is longer than a lap
+        most = int(np.argmax([run.length for run in runs]))
+        return runs[most], np.isfinite(runs[most].east)
+    return runs[most], back[most]
 
 
 def _signed_path(run: TracedRun | RideTrace, travelled: FloatArray) -> FloatArray:

@@ -10,6 +10,7 @@ from numba import njit
 
 FloatArray = npt.NDArray[np.float64]
 IntArray = npt.NDArray[np.int64]
+BoolArray = npt.NDArray[np.bool_]
 
 CLOSE = 25.0  # [m] two passes of one place lie within this
 SHORTEST = 120.0  # [m] no venue is shorter once round
@@ -58,7 +59,7 @@ def lap_from_fixes(
     # A few points at the far end of the longest path must not decide.
     share = close / np.maximum(total, 300.0 / spacing / stride)
     best = float(share.max())
-    if best < 0.3:
+    if best < 0.15:  # an hour's way to the venue may be part of the path
         return None
     start = int(np.argmax(share >= 0.8 * best))
     stop = start
@@ -67,6 +68,34 @@ def lap_from_fixes(
     middle = 0.5 * float(lags[start] + lags[stop]) * spacing
     fine = np.arange(middle - 40.0, middle + 40.5, 4.0)
     return _refined(gridded, spacing, fine[fine > 0.5 * SHORTEST])
+
+
+def comes_back(travelled: FloatArray, east: FloatArray, north: FloatArray, lap: float) -> BoolArray:
+    """Return which fixes lie where the path is again, or was, one lap away.
+
+    Parameters
+    ----------
+    travelled, east, north : ndarray, shape (n,)
+        Distance never falling; NaN without a fix. [m]
+    lap : float
+        [m]
+
+    Returns
+    -------
+    ndarray of bool, shape (n,)
+    """
+    good = np.isfinite(east) & np.isfinite(north)
+    back = np.zeros(travelled.size, bool)
+    if good.sum() < 4:
+        return back
+    s, first = np.unique(travelled[good], return_index=True)
+    x, y = east[good][first], north[good][first]
+    for shift in (lap, -lap):
+        at = travelled + shift
+        reach = (at >= s[0]) & (at <= s[-1]) & good
+        gap = np.hypot(np.interp(at[reach], s, x) - east[reach], np.interp(at[reach], s, y) - north[reach])
+        back[np.flatnonzero(reach)[gap < CLOSE]] = True
+    return back
 
 
 def _on_grid(

@@ -10,6 +10,7 @@ import numpy.typing as npt
 
 from ridercda.runs.reference_line import ReferenceLine
 from ridercda.runs.traced import Group
+from ridercda.session.document import VenueKind
 
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
@@ -79,3 +80,37 @@ class Placement:
     runs: Mapping[str, Placed]
     scales: Mapping[Group, Scale]
     notes: tuple[str, ...] = ()
+
+
+def lap_coordinate(kind: VenueKind, placed: Placed, length: float) -> tuple[FloatArray, float]:
+    """Return a coordinate that grows as a run goes on, and the length of a lap in it.
+
+    Parameters
+    ----------
+    kind : VenueKind
+    placed : Placed
+    length : float
+        Of the venue: once round, or the road one way. [m]
+
+    Returns
+    -------
+    coordinate : ndarray, shape (n,)
+        Never falling. [m]
+    lap : float
+        Once round, or there and back; inf on a road, where nothing repeats. [m]
+    """
+    if kind in (VenueKind.LOOP, VenueKind.TRACK):
+        coordinate, lap = placed.station * placed.direction[0], length
+    elif kind is VenueKind.OUT_AND_BACK:
+        position = np.clip(placed.station, 0.0, length)
+        there_and_back = np.where(placed.direction > 0, position, 2 * length - position)
+        coordinate, lap = np.unwrap(there_and_back, period=2 * length), 2 * length
+    else:
+        coordinate, lap = placed.station * placed.direction[0], np.inf
+    return np.asarray(np.maximum.accumulate(coordinate)), lap
+
+
+def passing_times(time: FloatArray, coordinate: FloatArray, goals: FloatArray) -> FloatArray:
+    """Return when a coordinate that never falls reaches some values, interpolated between records. [s]"""
+    moving = np.concatenate(([True], np.diff(coordinate) > 0))
+    return np.interp(goals, coordinate[moving], time[moving])

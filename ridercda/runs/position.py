@@ -14,7 +14,7 @@ from ridercda.rides.ride import Ride
 from ridercda.runs.closure_placement import place_by_closure
 from ridercda.runs.fixes import plane_of
 from ridercda.runs.gps_placement import place_loop_by_fixes, place_road_by_fixes
-from ridercda.runs.placement import Placed, Placement, Scale
+from ridercda.runs.placement import Placed, Placement, Scale, lap_coordinate, passing_times
 from ridercda.runs.records import counted
 from ridercda.runs.reference_line import ReferenceLine
 from ridercda.runs.traced import Group, RideTrace, TracedRun, trace_ride, trace_runs
@@ -261,16 +261,10 @@ def _run_position(
     if kind in (VenueKind.LOOP, VenueKind.TRACK):
         position = placed.station % length
         position[position >= length] = 0.0  # the remainder of a tiny negative number rounds up to the length
-        lap_coordinate, lap = placed.station * placed.direction[0], length
-    elif kind is VenueKind.OUT_AND_BACK:
-        position = np.clip(placed.station, 0.0, length)
-        there_and_back = np.where(placed.direction > 0, position, 2 * length - position)
-        lap_coordinate, lap = np.unwrap(there_and_back, period=2 * length), 2 * length
     else:
         position = np.clip(placed.station, 0.0, length)
-        lap_coordinate, lap = position * placed.direction[0], np.inf
     heading, curvature = _heading(run, placed, placement.line, shape)
-    gates = _gates(run, lap_coordinate, lap)
+    gates = _gates(run, *lap_coordinate(kind, placed, length))
     valid = ~placed.off_venue
     valid[1:] &= counted(run.time, slice(1, run.time.size), run.run.exclusions)
     return RunPosition(
@@ -306,15 +300,13 @@ def _gates(run: TracedRun, coordinate: FloatArray, lap: float) -> tuple[float, .
     """Return when laps begin and end: as given for the run, else each time it is back where it started."""
     if run.run.laps:
         return run.run.laps
-    rising = np.maximum.accumulate(coordinate)
     # A run cut at a gate may miss a record's way of its last lap.
     slack = min(0.01 * lap, 20.0)
-    laps = int((rising[-1] - rising[0] + slack) // lap) if np.isfinite(lap) else 0
+    laps = int((coordinate[-1] - coordinate[0] + slack) // lap) if np.isfinite(lap) else 0
     if laps == 0:
         return ()
-    goals = rising[0] + lap * np.arange(laps + 1)
-    moving = np.concatenate(([True], np.diff(rising) > 0))
-    return tuple(float(t) for t in np.interp(goals, rising[moving], run.time[moving]))
+    goals = coordinate[0] + lap * np.arange(laps + 1)
+    return tuple(float(t) for t in passing_times(run.time, coordinate, goals))
 
 
 def _laps(time: FloatArray, gates: tuple[float, ...]) -> IntArray:
