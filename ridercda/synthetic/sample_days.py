@@ -77,18 +77,18 @@ QUARRY_LOOP = SampleDay(
         name="Quarry loop, morning",
         venue=LoopVenue(length=2400.0, rises=(2.4, 1.2, 0.8, 0.4, 0.2, 0.0, 0.1), shape_seed=41),
         wind=WindSpec(
-            speed=1.2,
+            speed=0.8,
             blows_from=math.radians(235),
             turn=math.radians(25),
-            growth=0.5,
-            gusts=GustSpec(0.45, 11.0),
+            growth=0.4,
+            gusts=GustSpec(0.3, 11.0),
         ),
         rider=_ROAD_RIDER,
         tyres=(TyreSpec("25 mm clincher", 0.0042, warm_up=0.04, warm_up_time=400.0),),
         setups=(
-            SetupSpec("base", 0.2560, "A", "Base bars, road helmet", "25 mm clincher"),
+            SetupSpec("base", 0.2560, "A", "Road helmet", "25 mm clincher"),
             SetupSpec("long-tail", 0.2515, "B", "Long-tail helmet", "25 mm clincher", mass_change=0.1),
-            SetupSpec("low-pads", 0.2430, "C", "Pads 20 mm lower and narrower", "25 mm clincher"),
+            SetupSpec("low-pads", 0.2430, "C", "Low, narrow pads", "25 mm clincher"),
         ),
         order="ABCCBAABCCBA",
         laps=2,
@@ -101,7 +101,7 @@ QUARRY_LOOP = SampleDay(
         faults=(
             FaultSpec(InjectedFault.POWER_ZERO, 3205.0, 6.0),
             FaultSpec(InjectedFault.GAP, 4300.0, 8.0),
-            FaultSpec(InjectedFault.POWER_SPIKE, 5730.0, 1.0),
+            FaultSpec(InjectedFault.POWER_SPIKE, 5409.0, 1.0),
         ),
     ),
     rides=(SampleRide("morning"),),
@@ -114,7 +114,7 @@ QUARRY_LOOP = SampleDay(
 [[setup]]
 id = "base"
 letter = "A"
-name = "Base bars, road helmet"
+name = "Road helmet"
 baseline = true
 tyres = "25 mm clincher"
 
@@ -128,7 +128,7 @@ mass_change = "+0.1 kg"
 [[setup]]
 id = "low-pads"
 letter = "C"
-name = "Pads 20 mm lower and narrower"
+name = "Low, narrow pads"
 tyres = "25 mm clincher"
 power_cost = "4 W"                 # from two sessions on the trainer
 power_cost_sd = "3 W"
@@ -159,7 +159,7 @@ wind_from = 250
             "Ridge Road time trial",
         ),
     ),
-    notes=(("6", "Head unit lost the power meter for some seconds."),),
+    notes=(("5", "Head unit lost the power meter for some seconds."),),
 )
 
 RIDGE_OUT_AND_BACK = SampleDay(
@@ -178,8 +178,8 @@ RIDGE_OUT_AND_BACK = SampleDay(
         rider=_ROAD_RIDER,
         tyres=(TyreSpec("race", 0.0038),),
         setups=(
-            SetupSpec("round-bottle", 0.2480, "A", "Round bottle on the frame", "race"),
-            SetupSpec("behind-saddle", 0.2425, "B", "Bottle behind the saddle", "race"),
+            SetupSpec("round-bottle", 0.2480, "A", "Round bottle", "race"),
+            SetupSpec("behind-saddle", 0.2425, "B", "Rear bottle", "race"),
         ),
         order="ABBAABBA",
         laps=2,
@@ -201,14 +201,14 @@ RIDGE_OUT_AND_BACK = SampleDay(
 [[setup]]
 id = "round-bottle"
 letter = "A"
-name = "Round bottle on the frame"
+name = "Round bottle"
 baseline = true
 tyres = "race"
 
 [[setup]]
 id = "behind-saddle"
 letter = "B"
-name = "Bottle behind the saddle"
+name = "Rear bottle"
 tyres = "race"
 
 [[tyres]]
@@ -257,7 +257,7 @@ INDOOR_TRACK = SampleDay(
         setups=(
             SetupSpec("base", 0.2080, "A", "Base suit", "track tubular"),
             SetupSpec("ribbed-suit", 0.2035, "B", "Ribbed suit", "track tubular"),
-            SetupSpec("ribbed-covers", 0.2015, "C", "Ribbed suit and shoe covers", "track tubular"),
+            SetupSpec("ribbed-covers", 0.2015, "C", "Suit and covers", "track tubular"),
         ),
         order="ABCCBAABCCBA",
         laps=16,
@@ -294,7 +294,7 @@ tyres = "track tubular"
 [[setup]]
 id = "ribbed-covers"
 letter = "C"
-name = "Ribbed suit and shoe covers"
+name = "Suit and covers"
 tyres = "track tubular"
 """,
     courses="""\

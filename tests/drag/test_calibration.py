@@ -1,8 +1,8 @@
 """A small seeded part of the calibration study; `tests/benchmarks/calibration.py` is the whole.
 
 The bounds are such that a solver which keeps its promises (95 % intervals, the oracle's error) misses one of them
-by bad luck with about one set of seeds in a thousand; one whose intervals are half as wide as they should be, or
-whose error is half as large again, does not pass.
+by bad luck with about one set of seeds in a thousand; one whose intervals are a third as wide as they should
+be, or whose error is half as large again, does not pass.
 """
 
 from __future__ import annotations
@@ -18,7 +18,7 @@ sys.path.insert(0, str(Path(__file__).parents[1] / "benchmarks"))
 from calibration import run_day
 from scores import DayScore, Row, Shot, tally
 
-DAYS = {"windy": 12, "calm": 6, "holds-speed": 6}
+DAYS = {"windy": 8, "calm": 4, "holds-speed": 4}
 
 
 @pytest.fixture(scope="module")
@@ -39,7 +39,7 @@ def test_every_difference_is_answered(row: Row) -> None:
 def test_intervals_of_differences_hold_the_truth(row: Row) -> None:
     assert row.differences is not None
     assert row.differences.count == 3 * sum(DAYS.values())
-    assert row.differences.coverage >= 0.85
+    assert row.differences.coverage >= 0.80
 
 
 def test_error_of_differences_is_near_the_oracles(row: Row) -> None:
@@ -62,10 +62,10 @@ def test_stiller_air_means_smaller_errors(days: dict[str, list[DayScore]]) -> No
 
 def test_the_study_notices_intervals_that_are_too_narrow(days: dict[str, list[DayScore]]) -> None:
     def narrowed(shot: Shot) -> Shot:
-        return replace(shot, held=abs(shot.error) <= 0.25 * shot.width)
+        return replace(shot, held=abs(shot.error) <= shot.width / 6)
 
     every = [day for each in days.values() for day in each]
     narrow = [replace(d, differences=tuple(narrowed(s) for s in d.differences)) for d in every]
     found = tally(narrow).differences
     assert found is not None
-    assert found.coverage < 0.85
+    assert found.coverage < 0.80
