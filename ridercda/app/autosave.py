@@ -2,15 +2,17 @@
 
 from __future__ import annotations
 
+import contextlib
 import json
 import os
 import shutil
+import threading
 import uuid
 from dataclasses import dataclass
 from pathlib import Path
 
 import platformdirs
-from PySide6.QtCore import QObject, QSaveFile, QTimer
+from PySide6.QtCore import QObject, QTimer
 
 from ridercda.app.document import SessionDocument
 from ridercda.errors import SessionError
@@ -46,6 +48,7 @@ class Autosave(QObject):
         self._document = document
         self._root = root or kept_root()
         self._place: Path | None = None
+        self._thread: threading.Thread | None = None
         self._timer = QTimer(self, singleShot=True, interval=EVERY)
         self._timer.timeout.connect(self.keep)
         document.session_changed.connect(self._on_session_changed)
@@ -70,11 +73,22 @@ class Autosave(QObject):
             self._place.mkdir(parents=True, exist_ok=True)
             origin = {"folder": str(self._document.folder or ""), "process": os.getpid()}
             _write_whole(self._place / _ORIGIN, json.dumps(origin))
-        _write_whole(self._place / FILE_NAME, text_of_new(self._document.session))
+        self._finish()
+        self._thread = threading.Thread(
+            target=_keep, args=(self._place / FILE_NAME, self._document.session), daemon=True
+        )
+        self._thread.start()
+
+    def _finish(self) -> None:
+        """Wait until what is being kept is on disk."""
+        if self._thread is not None:
+            self._thread.join()
+            self._thread = None
 
     def forget(self) -> None:
         """Drop what is kept: it is saved, or given up."""
         self._timer.stop()
+        self._finish()
         if self._place is not None:
             shutil.rmtree(self._place, ignore_errors=True)
             self._place = None
@@ -83,6 +97,7 @@ class Autosave(QObject):
         """Go on with work of an earlier start, in its place."""
         self.forget()
         self._place = kept.place
+        kept.place.mkdir(parents=True, exist_ok=True)
         origin = {"folder": str(kept.folder or ""), "process": os.getpid()}
         _write_whole(kept.place / _ORIGIN, json.dumps(origin))
 
@@ -123,9 +138,17 @@ def _is_running(process: int) -> bool:
     return True
 
 
+def _keep(path: Path, session: Session) -> None:
+    """Write a session aside; in a thread, because turning one into text takes a tenth of a second."""
+    with contextlib.suppress(OSError):  # a full disk must not take the window down; the next time may do
+        _write_whole(path, text_of_new(session))
+
+
 def _write_whole(path: Path, text: str) -> None:
     """Write a file so that it is there whole or not at all."""
-    file = QSaveFile(str(path))
-    if file.open(QSaveFile.OpenModeFlag.WriteOnly):
-        file.write(text.encode("utf-8"))
-        file.commit()
+    fresh = path.with_name(path.name + ".new")
+    with fresh.open("w", encoding="utf-8") as file:
+        file.write(text)
+        file.flush()
+        os.fsync(file.fileno())
+    fresh.replace(path)

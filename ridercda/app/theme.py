@@ -49,6 +49,7 @@ class Theme(QObject):
         super().__init__(parent)
         self._mode = mode
         self._zoom = zoom
+        self._fonts: dict[tuple[Type, bool, float], QFont] = {}
         self._system_size = float(
             QFontInfo(QFontDatabase.systemFont(QFontDatabase.SystemFont.GeneralFont)).pixelSize()
         )
@@ -119,6 +120,12 @@ class Theme(QObject):
 
     def font(self, kind: Type = Type.TEXT, *, strong: bool = False) -> QFont:
         """Return a font of the scale, with figures of one width."""
+        key = (kind, strong, self._zoom)
+        if key not in self._fonts:
+            self._fonts[key] = self._made_font(kind, strong=strong)
+        return QFont(self._fonts[key])
+
+    def _made_font(self, kind: Type, *, strong: bool) -> QFont:
         font = QFont(FAMILY)
         font.setStyleHint(QFont.StyleHint.SansSerif)
         font.setPixelSize(round(self.text_size * kind.value))

@@ -292,6 +292,9 @@ class MainWindow(QMainWindow):
         settings.keep_theme(self.desk.theme)
         settings.keep_units(self.desk.units)
         self.autosave.forget()
+        self.desk.document.undo_stack.blockSignals(
+            True
+        )  # it clears itself when it goes, and nobody needs to hear
         self.desk.close()
         super().closeEvent(event)
 

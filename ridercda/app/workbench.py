@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import QEvent, QObject, QRect, Qt, Signal
-from PySide6.QtGui import QKeyEvent, QResizeEvent
+from PySide6.QtGui import QKeyEvent, QResizeEvent, QShowEvent
 from PySide6.QtWidgets import (
     QButtonGroup,
     QFrame,
@@ -130,6 +130,8 @@ class Workbench(QWidget):
             self.toggle_side()
 
     def _lay_out_side(self) -> None:
+        if not self.isVisible():  # before it is shown its width means nothing, and moving the side about is slow
+            return
         narrow = self.width() < self._desk.theme.px(DRAWER_BELOW)
         if narrow != self._is_drawer:
             self._is_drawer = narrow
@@ -165,4 +167,8 @@ class Workbench(QWidget):
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Change between column and drawer."""
+        self._lay_out_side()
+
+    def showEvent(self, event: QShowEvent) -> None:
+        """Decide between column and drawer."""
         self._lay_out_side()

@@ -55,7 +55,7 @@ class FigureRows:
     def _on_field_committed(self, figure: Figure, field: QuantityField, value: float | None) -> None:
         text = field.tr("Set {}").format(figure.words[:1].lower() + figure.words[1:])
         if not self._desk.document.edit(text, lambda session: figure.put(session, value)):
-            field.set_value(figure.get(self._desk.session), figure.assumption(), required=figure.required)
+            field.restore()
 
     def refresh(self, session: Session) -> None:
         """Show what the session holds."""

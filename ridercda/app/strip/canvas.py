@@ -41,7 +41,8 @@ class StripCanvas(QWidget):
         self._low, self._high = 0.0, 1.0
         self.new_span: tuple[str, float, float] | None = None  # a run being drawn: ride, start, end
         self.held: Grip | None = None  # the edge the keyboard holds
-        self._ground: QPixmap | None = None
+        self._traces: QPixmap | None = None
+        self._had_wind = False
         self.setMouseTracking(True)
         self.setAccessibleName(self.tr("Day strip"))
         self.list = RunList(self)
@@ -55,7 +56,7 @@ class StripCanvas(QWidget):
         desk.selection.changed.connect(self._on_selection_changed)
         desk.selection.moment_changed.connect(self.update)
         desk.theme.changed.connect(self._on_theme_changed)
-        desk.units.changed.connect(self.update)
+        desk.units.changed.connect(self._on_theme_changed)
 
     # -- what is shown -----------------------------------------------------------------------------------
 
@@ -91,7 +92,7 @@ class StripCanvas(QWidget):
     def _on_session_opened(self) -> None:
         self._picture = StripPicture(EMPTY_AXIS)
         self._low, self._high, self.held = 0.0, 1.0, None
-        self._ground = None
+        self._traces = None
 
     def _on_shelf_changed(self) -> None:
         rides = self._desk.shelf.rides()
@@ -107,6 +108,7 @@ class StripCanvas(QWidget):
             rides,
             proposals_of(self._desk.proposals.runs, axis, rides),
         )
+        self._traces = None
         if whole or self._high > axis.length:
             self._low, self._high = 0.0, axis.length
         self._refresh()
@@ -131,7 +133,10 @@ class StripCanvas(QWidget):
         return self._desk.solving.estimate
 
     def _refresh(self) -> None:
-        self._ground = None
+        wind = self._picture.has_wind
+        if wind is not self._had_wind or self.bands().map.height():  # lanes move, or the map shows the runs
+            self._traces = None
+        self._had_wind = wind
         self.list.show_runs(
             tuple((run.id, self.words_for(run)) for run in self._picture.runs), self._desk.selection.run
         )
@@ -148,7 +153,7 @@ class StripCanvas(QWidget):
         self.update()
 
     def _on_theme_changed(self) -> None:
-        self._ground = None
+        self._traces = None
         self.updateGeometry()
         self.update()
 
@@ -168,17 +173,26 @@ class StripCanvas(QWidget):
     # -- painting ----------------------------------------------------------------------------------------
 
     def paintEvent(self, event: QPaintEvent) -> None:
-        """Draw the ground, kept as a picture while nothing changes, then what is picked and pointed at."""
+        """Draw the blocks over the traces, which are kept as a picture, then what is picked and pointed at."""
         painter = QPainter(self)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
         if not self._picture.traces:
             self._draw_empty(painter)
             return
-        if self._ground is None or self._ground.size() != self.size() * self.devicePixelRatioF():
-            self._ground = self._drawn_ground()
-        painter.drawPixmap(0, 0, self._ground)
+        if self._traces is None or self._traces.size() != self.size() * self.devicePixelRatioF():
+            self._traces = self._drawn_traces()
         view, bands = self.view(), self.bands()
-        painter.setClipRect(QRectF(view.left - 4, 0, view.right - view.left + 8, self.height()))
+        seen = QRectF(view.left - 4, 0, view.right - view.left + 8, self.height())
+        painter.setClipRect(seen)
+        painting.draw_ground(painter, self.theme, self._picture, view, bands)
+        painter.setClipping(False)
+        painter.drawPixmap(0, 0, self._traces)
+        painter.setClipRect(seen)
+        painting.draw_proposals(painter, self.theme, self._picture, view, bands)
+        painting.draw_blocks(painter, self.theme, self._picture, view, bands)
+        if self._picture.has_wind:
+            scale = self._desk.units.scale(Kind.WIND_SPEED)
+            painting.draw_wind(painter, self.theme, self._picture, view, bands.wind, scale)
         for run_id in self._desk.selection.runs:
             if run := self._picture.run(run_id):
                 held = self.held if run_id == self._desk.selection.run else None
@@ -188,7 +202,8 @@ class StripCanvas(QWidget):
         self._draw_moment(painter, view, bands)
         painter.end()
 
-    def _drawn_ground(self) -> QPixmap:
+    def _drawn_traces(self) -> QPixmap:
+        """Return what no edit of a run changes: traces, clock, faults, names of the lanes."""
         ratio = self.devicePixelRatioF()
         pixmap = QPixmap(self.size() * ratio)
         pixmap.setDevicePixelRatio(ratio)
@@ -198,13 +213,7 @@ class StripCanvas(QWidget):
         view, bands = self.view(), self.bands()
         self._draw_lane_names(painter, bands)
         painter.setClipRect(QRectF(view.left - 4, 0, view.right - view.left + 8, self.height()))
-        painting.draw_ground(painter, self.theme, self._picture, view, bands)
         painting.draw_traces(painter, self.theme, self._picture, view, bands.traces)
-        painting.draw_proposals(painter, self.theme, self._picture, view, bands)
-        painting.draw_blocks(painter, self.theme, self._picture, view, bands)
-        if self._picture.has_wind:
-            scale = self._desk.units.scale(Kind.WIND_SPEED)
-            painting.draw_wind(painter, self.theme, self._picture, view, bands.wind, scale)
         painter.setClipping(False)
         painting.draw_clock(painter, self.theme, self._picture, view, bands.clock)
         painting.draw_faults(painter, self.theme, self._picture, view, bands.faults)
@@ -268,7 +277,7 @@ class StripCanvas(QWidget):
         """Show another part of the axis."""
         if (view.low, view.high) != (self._low, self._high):
             self._low, self._high = view.low, view.high
-            self._ground = None
+            self._traces = None
             self.update()
 
     def zoom(self, factor: float) -> None:
@@ -358,4 +367,4 @@ class StripCanvas(QWidget):
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Keep the list behind the picture."""
         self.list.setGeometry(self.rect().adjusted(2, 2, -2, -2))
-        self._ground = None
+        self._traces = None

@@ -36,6 +36,7 @@ class QuantityField(QWidget):
         self._value: float | None = None
         self._assumed: Assumed | None = None
         self._required = False
+        self._is_shown = False
         self.line = QLineEdit()
         self.line.textEdited.connect(self._on_line_edited)
         self.line.editingFinished.connect(self._on_line_finished)
@@ -50,7 +51,7 @@ class QuantityField(QWidget):
         layout.addWidget(self.line)
         layout.addWidget(self._words)
         self.setFocusProxy(self.line)
-        units.changed.connect(self._show)
+        units.changed.connect(self.restore)
         theme.changed.connect(self._on_theme_changed)
         self._on_theme_changed()
 
@@ -62,10 +63,11 @@ class QuantityField(QWidget):
         self, value: float | None, assumed: Assumed | None = None, *, required: bool = False
     ) -> None:
         """Show a value, or what is assumed without one; what is being typed is left alone."""
-        same = (value, assumed, required) == (self._value, self._assumed, self._required)
+        if self._is_shown and (value, assumed, required) == (self._value, self._assumed, self._required):
+            return
         self._value, self._assumed, self._required = value, assumed, required
-        if not (same and self.line.isModified()):
-            self._show()
+        self._is_shown = True
+        self.restore()
 
     @property
     def value(self) -> float | None:
@@ -105,7 +107,8 @@ class QuantityField(QWidget):
             return None
         return self._units.symbol(self._kind) or None
 
-    def _show(self) -> None:
+    def restore(self) -> None:
+        """Show the value that holds, whatever was typed."""
         self.line.setText("" if self._value is None else self.text_of(self._value))
         self.line.setModified(False)
         placeholder = ""
@@ -141,7 +144,7 @@ class QuantityField(QWidget):
             return
         self.line.setModified(False)
         if value == self._value:
-            self._show()
+            self.restore()
         else:
             self.committed.emit(value)
 
@@ -153,7 +156,7 @@ class QuantityField(QWidget):
             and event.key() == Qt.Key.Key_Escape
             and self.line.isModified()
         ):
-            self._show()
+            self.restore()
             return True
         return super().eventFilter(watched, event)
 
