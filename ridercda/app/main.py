@@ -17,9 +17,10 @@ def run(path: Path | None) -> int:
     """Open the window, with a session where one is named, and return when it is closed."""
     app = application()
     desk = build_desk(Settings())
-    dress = Dress(app, desk.theme)
     window = MainWindow(desk)
-    dress.setParent(window)
+    Dress(
+        app, desk.theme, window
+    )  # once it is built: dressing every part as it is put in place takes twice as long
     window.show()
     QTimer.singleShot(0, desk.reader.start)
     QTimer.singleShot(0, lambda: desk.solver.request(tasks.warm_up))

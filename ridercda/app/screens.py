@@ -61,9 +61,8 @@ def pictures(folder: Path) -> Iterator[Path]:
     with tempfile.TemporaryDirectory() as scratch:
         store = QSettings(str(Path(scratch) / "settings.ini"), QSettings.Format.IniFormat)
         desk = build_desk(Settings(store))
-        dress = Dress(app, desk.theme)
         window = MainWindow(desk, Path(scratch) / "unsaved")
-        dress.setParent(window)
+        Dress(app, desk.theme, window)
         window.show()
         opened = ""
         try:

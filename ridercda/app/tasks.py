@@ -51,7 +51,7 @@ def solve(watch: Watch, session: Session, fresh: dict[str, Ride], wanted: tuple[
 
 def lap_traces(watch: Watch) -> Laps | None:
     """Return the laps of the day last solved."""
-    from ridercda.app.lap_traces import laps_of
+    from ridercda.app.lap_work import laps_of
 
     bench = _bench()
     if bench.solved is None:

@@ -53,6 +53,7 @@ class Theme(QObject):
         self._system_size = float(
             QFontInfo(QFontDatabase.systemFont(QFontDatabase.SystemFont.GeneralFont)).pixelSize()
         )
+        self._roles = DARK if self.is_dark else LIGHT
         QGuiApplication.styleHints().colorSchemeChanged.connect(self._on_system_scheme_changed)
 
     @property
@@ -75,13 +76,13 @@ class Theme(QObject):
     @property
     def roles(self) -> Roles:
         """The colours now in force."""
-        return DARK if self.is_dark else LIGHT
+        return self._roles
 
     def set_mode(self, mode: Mode) -> None:
         """Choose light, dark or the system's."""
         if mode is not self._mode:
             self._mode = mode
-            self.changed.emit()
+            self._take_roles()
 
     def set_zoom(self, zoom: float) -> None:
         """Choose the size of everything, one of `ZOOMS`."""
@@ -92,7 +93,11 @@ class Theme(QObject):
 
     def _on_system_scheme_changed(self) -> None:
         if self._mode is Mode.SYSTEM:
-            self.changed.emit()
+            self._take_roles()
+
+    def _take_roles(self) -> None:
+        self._roles = DARK if self.is_dark else LIGHT
+        self.changed.emit()
 
     def colour(self, role: str, alpha: float = 1.0) -> QColor:
         """Return a role's colour, by the name of its field in `Roles`."""
@@ -102,7 +107,7 @@ class Theme(QObject):
 
     def chip(self, index: int) -> Chip:
         """Return the chip of the setup at this place in the session."""
-        chips = DARK_CHIPS if self.is_dark else LIGHT_CHIPS
+        chips = DARK_CHIPS if self._roles is DARK else LIGHT_CHIPS
         return chips[index % len(chips)]
 
     def band(self, colour: str, share: float = 0.78) -> QColor:

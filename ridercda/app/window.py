@@ -72,8 +72,7 @@ class MainWindow(QMainWindow):
         self.start.new_asked.connect(self.new_session)
         self.strip.exclude_requested.connect(self.ask_reason)
         self.workbench.side.exclude_requested.connect(self.ask_reason)
-        for page in self.workbench.pages.values():
-            page.asked.connect(self._on_page_asked)
+        self.workbench.asked.connect(self._on_page_asked)
 
     @property
     def strip(self) -> DayStrip:

@@ -30,11 +30,12 @@ class Workbench(QWidget):
     """Lays out the parts; it decides nothing."""
 
     page_changed = Signal(str)
+    asked = Signal(str, object)  # what a page asks for: an action's id and what it is about
     side_changed = Signal()
 
     def __init__(self, desk: Desk, runs: RunEdits, notice: QWidget) -> None:
         super().__init__()
-        self._desk = desk
+        self._desk, self._runs = desk, runs
         px = desk.theme.px
         self.strip = DayStrip(desk, runs)
         strip_card = QFrame()
@@ -43,7 +44,7 @@ class Workbench(QWidget):
         inner.setContentsMargins(1, 1, 1, 1)
         inner.addWidget(self.strip)
         self.side = SidePanel(desk, runs)
-        self.pages: dict[str, Page] = {}
+        self.pages: dict[str, Page] = {}  # those that were shown
         self._stack = QStackedWidget()
         self._names = QButtonGroup(self)
         line = QHBoxLayout()
@@ -59,9 +60,7 @@ class Workbench(QWidget):
             button.setProperty("page", True)
             self._names.addButton(button, place)
             line.addWidget(button)
-            page = spec.build(desk, runs)
-            self.pages[spec.id] = page
-            self._stack.addWidget(page)
+            self._stack.addWidget(QWidget())
         line.addStretch(1)
         self._names.idClicked.connect(lambda place: self.show_page(PAGES[place].id))
         self._side_wanted = True
@@ -87,7 +86,6 @@ class Workbench(QWidget):
         self._is_drawer = False
         desk.theme.changed.connect(self._on_theme_changed)
         self._on_theme_changed()
-        self.show_page(PAGES[0].id)
 
     def _on_theme_changed(self) -> None:
         for button in self._names.buttons():
@@ -103,11 +101,23 @@ class Workbench(QWidget):
     def show_page(self, page_id: str) -> None:
         """Show a page."""
         place = next(k for k, spec in enumerate(PAGES) if spec.id == page_id)
+        if page_id not in self.pages:
+            self._build_page(place)
         self._stack.setCurrentIndex(place)
         self._names.button(place).setChecked(True)
         for button in self._names.buttons():
             button.setFont(self._desk.theme.font(Type.PAGE, strong=button.isChecked()))
         self.page_changed.emit(page_id)
+
+    def _build_page(self, place: int) -> None:
+        page = PAGES[place].build(self._desk, self._runs)
+        page.asked.connect(self.asked)
+        self.pages[PAGES[place].id] = page
+        blank = self._stack.widget(place)
+        self._stack.insertWidget(place, page)
+        if blank is not None:
+            self._stack.removeWidget(blank)
+            blank.deleteLater()
 
     # -- the side ----------------------------------------------------------------------------------------
 
@@ -130,7 +140,9 @@ class Workbench(QWidget):
             self.toggle_side()
 
     def _lay_out_side(self) -> None:
-        if not self.isVisible():  # before it is shown its width means nothing, and moving the side about is slow
+        if (
+            not self.isVisible()
+        ):  # before it is shown its width means nothing, and moving the side about is slow
             return
         narrow = self.width() < self._desk.theme.px(DRAWER_BELOW)
         if narrow != self._is_drawer:

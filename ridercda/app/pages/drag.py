@@ -31,6 +31,7 @@ class DragPage(Page):
     def __init__(self, desk: Desk, runs: RunEdits) -> None:
         super().__init__(desk, runs)
         px = self.theme.px
+        self._shows: object = None
         self._intervals = IntervalChart(self.theme)
         self._intervals.picked.connect(desk.selection.pick_setup)
         self._answer = ChartCard(self.theme, self.tr("Differences of CdA"), self._intervals)
@@ -146,10 +147,24 @@ class DragPage(Page):
         baseline = self.desk.session.baseline
         if estimate is None or baseline is None:
             return
-        stale = self.desk.solving.is_stale
+        set_flag(self._sentence, "quiet", on=self.desk.solving.is_stale)
         badges = self.desk.badges()
+        selection, theme = self.desk.selection, self.theme
+        shows = (
+            estimate,
+            baseline.id,
+            tuple(badges.items()),
+            selection.runs,
+            selection.setup,
+            theme.roles,
+            theme.zoom,
+            self.desk.units.units,
+            self.desk.session.smallest_worthwhile,
+        )
+        if shows == self._shows:  # while an edge is dragged nothing here changes until new figures come
+            return
+        self._shows = shows
         words = answer(estimate, badges, baseline.id)
-        set_flag(self._sentence, "quiet", on=stale)
         self._sentence.setFont(self.theme.font(Type.SENTENCE, strong=True))
         self._sentence.setText(words.sentence)
         self._beside.setFont(self.theme.font())

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from functools import partial
 from pathlib import Path
 
 from PySide6.QtCore import QRectF, Qt, Signal
@@ -11,7 +12,7 @@ from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QPushButton, QSizePol
 
 from ridercda.app.cautions import caution_texts
 from ridercda.app.desk import Desk
-from ridercda.app.samples import Sample, samples
+from ridercda.app.samples import samples
 from ridercda.app.theme import Theme, Type
 from ridercda.app.widgets import drawing
 from ridercda.app.widgets.card import Card
@@ -104,7 +105,7 @@ class StartPage(QWidget):
         self._rows = []
         known = samples()
         for sample in known:
-            self._add(self._samples, sample.name, sample.about, "", lambda s=sample: self._choose_sample(s))
+            self._add(self._samples, sample.name, sample.about, "", partial(self.sample_chosen.emit, sample))
         if not known:
             self._say(self._samples, self.tr("The samples did not come with this installation."))
         else:
@@ -115,16 +116,11 @@ class StartPage(QWidget):
         folders = self._desk.settings.recent
         for folder in folders[:5]:
             where = str(folder.parent)
-            self._add(
-                self._recent, folder.name, where, str(folder), lambda f=folder: self.recent_chosen.emit(f)
-            )
+            self._add(self._recent, folder.name, where, str(folder), partial(self.recent_chosen.emit, folder))
         if not folders:
             self._say(self._recent, self.tr("Sessions you open are listed here."))
         for card in (self._samples, self._recent):
             card.body.addStretch(1)
-
-    def _choose_sample(self, sample: Sample) -> None:
-        self.sample_chosen.emit(sample)
 
     def _add(self, card: Card, words: str, note: str, tip: str, act: Callable[[], None]) -> None:
         button = _Entry(self._desk.theme, words, note)

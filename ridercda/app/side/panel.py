@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+from functools import partial
+
 from PySide6.QtCore import QSize, Qt, Signal
 from PySide6.QtWidgets import (
     QButtonGroup,
@@ -56,8 +59,8 @@ class SidePanel(QWidget):
         self._keys = {}
         pages = (
             (RUN, self.tr("Run"), self.facts),
-            (SETUP, self.tr("Setup"), SetupForm(desk, runs)),
-            (DAY, self.tr("Test day"), DayForm(desk)),
+            (SETUP, self.tr("Setup"), None),
+            (DAY, self.tr("Test day"), None),
         )
         for place, (key, words, page) in enumerate(pages):
             button = QPushButton(words)
@@ -66,9 +69,13 @@ class SidePanel(QWidget):
             self._tabs.addButton(button, place)
             self._keys[key] = place
             line.addWidget(button)
-            self._stack.addWidget(_scrolled(page, px(14)))
+            self._stack.addWidget(_scrolled(page, px(14)) if page else QWidget())
+        self._unbuilt: dict[int, Callable[[], QWidget]] = {
+            self._keys[SETUP]: partial(SetupForm, desk, runs),
+            self._keys[DAY]: partial(DayForm, desk),
+        }
         line.addStretch(1)
-        self._tabs.idClicked.connect(self._stack.setCurrentIndex)
+        self._tabs.idClicked.connect(self._show_place)
         card = QFrame()
         card.setObjectName("card")
         inner = QVBoxLayout(card)
@@ -90,7 +97,17 @@ class SidePanel(QWidget):
 
     def show_details(self, key: str) -> None:
         """Show the details of the run, the setup or the day."""
-        place = self._keys[key]
+        self._show_place(self._keys[key])
+
+    def _show_place(self, place: int) -> None:
+        if build := self._unbuilt.pop(
+            place, None
+        ):  # forms hold many fields, so they wait until they are wanted
+            blank = self._stack.widget(place)
+            self._stack.insertWidget(place, _scrolled(build(), self._desk.theme.px(14)))
+            if blank is not None:
+                self._stack.removeWidget(blank)
+                blank.deleteLater()
         self._stack.setCurrentIndex(place)
         self._tabs.button(place).setChecked(True)
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from PySide6.QtCore import QEvent, QObject, Qt, Signal
+from PySide6.QtCore import Qt, Signal
 from PySide6.QtGui import QKeyEvent
 from PySide6.QtWidgets import QLabel, QLineEdit, QSizePolicy, QVBoxLayout, QWidget
 
@@ -24,6 +24,19 @@ class Assumed:
     source: str
 
 
+class _Line(QLineEdit):
+    """A line that can be given up with Escape."""
+
+    given_up = Signal()
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Escape gives up what was typed."""
+        if event.key() == Qt.Key.Key_Escape and self.isModified():
+            self.given_up.emit()
+        else:
+            super().keyPressEvent(event)
+
+
 class QuantityField(QWidget):
     """A line of text that is a quantity; empty means "not given"."""
 
@@ -37,10 +50,10 @@ class QuantityField(QWidget):
         self._assumed: Assumed | None = None
         self._required = False
         self._is_shown = False
-        self.line = QLineEdit()
+        self.line = _Line()
+        self.line.given_up.connect(self.restore)
         self.line.textEdited.connect(self._on_line_edited)
         self.line.editingFinished.connect(self._on_line_finished)
-        self.line.installEventFilter(self)
         self._words = QLabel()
         self._words.setWordWrap(True)
         self._words.setVisible(False)
@@ -147,18 +160,6 @@ class QuantityField(QWidget):
             self.restore()
         else:
             self.committed.emit(value)
-
-    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
-        """Escape gives up what was typed."""
-        if (
-            isinstance(event, QKeyEvent)
-            and event.type() is QEvent.Type.KeyPress
-            and event.key() == Qt.Key.Key_Escape
-            and self.line.isModified()
-        ):
-            self.restore()
-            return True
-        return super().eventFilter(watched, event)
 
 
 def short_source(source: str) -> str:
