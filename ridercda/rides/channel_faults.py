@@ -171,8 +171,8 @@ def running_mean_width(time: FloatArray, values: FloatArray) -> int | None:
     Notes
     -----
     The change of a running mean over w records is (x[t] - x[t-w])/w. Its neighbours share nearly all of their
-    noise, so that changes correlate; with the noise of x the correlation falls evenly and turns up sharply at lag w,
-    where the value that came in goes out. Changes of an unsmoothed channel do not correlate. Smoothing that weighs
+    noise, so that changes correlate; the correlation falls evenly to below zero and turns up sharply at lag w, where
+    the value that came in goes out. Changes of an unsmoothed channel do not correlate. Smoothing that weighs
     records differently has no such bend and is not found.
     """
     steps = np.diff(time)
@@ -190,9 +190,8 @@ def running_mean_width(time: FloatArray, values: FloatArray) -> int | None:
     others = np.delete(bend[1:], width - 2)
     sharp = float(bend[width - 1])
     needed = max(limit.SMOOTHED_BEND, 5.0 * float(np.sqrt(6.0 / good.sum())))
-    if correlation[1] > limit.SMOOTHED_CORRELATION and sharp > needed and sharp > 2.0 * float(others.max()):
-        return width
-    return None
+    smooth = correlation[1] > limit.SMOOTHED_CORRELATION and correlation[width] < limit.SMOOTHED_RETURN
+    return width if smooth and sharp > needed and sharp > 2.0 * float(others.max()) else None
 
 
 def _autocorrelation(values: FloatArray, good: BoolArray, longest: int) -> FloatArray:

@@ -17,6 +17,7 @@ from ridercda.rides.thresholds import FEW_OUT_OF_ORDER
 Decide = Callable[[Fault], Fault]
 """From a fault with its choices to the same fault with the repair taken."""
 
+_TICK = 1e-6  # records closer than this bear the same time [s]
 _DROP, _SORT, _SHIFT = "drop", "sort", "shift"
 _SPREAD, _MERGE, _FIRST, _LAST = "spread", "merge", "keep-first", "keep-last"
 
@@ -38,9 +39,10 @@ def mend_clock(ride: Ride, decide: Decide) -> tuple[Ride, tuple[Fault, ...]]:
     faults : tuple of Fault
         Spans are on the clock as recorded.
     """
-    if ride.time.size < 2 or bool((np.diff(ride.time) > 0).all()):
+    if ride.time.size < 2 or bool((np.diff(ride.time) > _TICK).all()):
         return ride, ()
     faults: list[Fault] = []
+    ride = replace(ride, time=np.round(ride.time, 6))
     ride = _mend_stray(ride, decide, faults)
     ride = _mend_set_back(ride, decide, faults)
     ride = _mend_repeated(ride, decide, faults)

@@ -36,6 +36,7 @@ _DELIMITERS = "\t;,"
 _UNIT = re.compile(r"(?P<name>.*?)\s*(?:\[(?P<square>[^\]]*)\]|\((?P<round>[^)]*)\))\s*")
 _UNIX_TIME = 1e9  # a number this large is seconds since 1970, not since the start
 _TOO_FAST = 25.0  # a median speed without a unit above this is in km/h or mph [m/s]
+_SHOWN_HEADERS = 30  # in a message
 _FIELD_LIMIT = 1 << 16  # characters in a cell; no cell of a ride is longer
 
 
@@ -59,7 +60,9 @@ class UnknownColumns(ReaderError):
 
     def __init__(self, message: str, headers: tuple[str, ...]) -> None:
         self.headers = headers
-        found = ", ".join(repr(header) for header in headers)
+        found = ", ".join(_shown(header) for header in headers[:_SHOWN_HEADERS])
+        if len(headers) > _SHOWN_HEADERS:
+            found += f" and {len(headers) - _SHOWN_HEADERS} more"
         super().__init__(
             f"{message}. Its headers are {found}; names understood are {', '.join(CANONICAL_NAMES)}. "
             'Name the others under columns, e.g. columns = {power = "Watts [W]"}'
@@ -130,8 +133,8 @@ def read_delimited(stream: BinaryIO, options: ReadOptions, watch: Watch) -> Ride
     clock, zero = _clock(_cells(table, columns[TIME]), columns[TIME], options.start)
     if not np.isfinite(clock).any():
         raise ReaderError(
-            f"no cell of {columns[TIME].header!r} is a time; write seconds, h:mm:ss or ISO 8601, first is "
-            f"{_cells(table, columns[TIME])[0]!r}"
+            f"no cell of {_shown(columns[TIME].header)} is a time; write seconds, h:mm:ss or ISO 8601, first is "
+            f"{_shown(_cells(table, columns[TIME])[0])}"
         )
     channels: dict[str, FloatArray] = {}
     for done, (name, column) in enumerate(columns.items(), start=2):
@@ -305,14 +308,14 @@ def _number(cell: str) -> float:
 def _in_si(values: FloatArray, column: _Column, channel: str) -> FloatArray:
     unit = column.unit or USUAL_UNITS[channel]
     try:
-        si = conversion(unit, CHANNEL_KINDS[channel], column.header).to_si(values)
+        si = conversion(unit[:40], CHANNEL_KINDS[channel], column.header[:60]).to_si(values)
     except QuantityError as error:
         raise ReaderError(str(error)) from error
     if channel == "speed" and not column.unit:
         moving = si[np.isfinite(si) & (si > 0)]
         if moving.size and float(np.median(moving)) > _TOO_FAST:
             raise ReaderError(
-                f"{column.header!r} names no unit and half its values are above {_TOO_FAST:g} m/s; name the "
+                f"{_shown(column.header)} names no unit and half its values are above {_TOO_FAST:g} m/s; name the "
                 f'unit in the header or the mapping, e.g. columns = {{speed = "{column.header} [km/h]"}}'
             )
     return si
@@ -325,7 +328,7 @@ def _clock(
     numeric = _numbers(cells)
     if np.isfinite(numeric).sum() * 2 > len(cells):
         try:
-            elapsed = conversion(column.unit or "s", Kind.DURATION, column.header).to_si(numeric)
+            elapsed = conversion((column.unit or "s")[:40], Kind.DURATION, column.header[:60]).to_si(numeric)
         except QuantityError as error:
             raise ReaderError(str(error)) from error
         known = elapsed[np.isfinite(elapsed)]
@@ -372,6 +375,11 @@ def _laps(clock: FloatArray, cells: Sequence[str]) -> list[LapSpan]:
             spans.append(LapSpan(begin, time, LapTrigger.UNKNOWN))
             begin = time
     return spans
+
+
+def _shown(text: str) -> str:
+    """Return a text of the file in quotes, cut where it is too long for a message."""
+    return repr(text if len(text) <= 40 else f"{text[:39]}…")
 
 
 def canonical_units() -> Mapping[str, str]:

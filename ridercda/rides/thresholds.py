@@ -44,6 +44,7 @@ FROZEN_POSITION: Final = 5.0  # a fix that stays while the wheel turns this long
 MOVING: Final = 3.0  # surely moving [m/s]
 SMOOTHED_LONGEST: Final = 15  # records a running mean may cover
 SMOOTHED_CORRELATION: Final = 0.1  # of neighbouring changes
+SMOOTHED_RETURN: Final = -0.15  # of changes one window apart
 SMOOTHED_BEND: Final = 0.25  # of that correlation at the window
 SMOOTHED_FEWEST: Final = 300  # records
 HELD_SHARE: Final = 0.6  # of runs of equal values that have one length
