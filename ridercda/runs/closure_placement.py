@@ -20,6 +20,7 @@ from ridercda.runs.ground_pattern import (
     match,
     pattern_of,
     peak,
+    pieces_of,
 )
 from ridercda.runs.lap_length import SHORTEST
 from ridercda.runs.placement import Placed, Placement, Scale
@@ -30,6 +31,7 @@ from ridercda.session.document import Venue, VenueKind
 FloatArray = npt.NDArray[np.float64]
 
 CIRCUMFERENCE_RANGE = 0.03  # relative; no wheel is set further from the truth
+PIECE = 12  # laps
 PRESS_ERROR = 0.7  # [s] how late or early a lap button is pressed; common practice
 LINE_ERROR = 3e-3  # relative error of a lap of a track: 0.2 m higher is 0.5 % of 250 m; common practice
 ALIKE = 0.4  # correlation from which two patterns are taken to show the same ground
@@ -212,12 +214,19 @@ def _lap_by_ground(
     middle = length
     if by_marks is not None:
         middle, reach = by_marks[0], min(reach, 4 * by_marks[1] + step)
+    # Long runs resolve a lap so finely that all of the range would take long: first pieces of a few laps.
+    pieces = [piece for pattern in own for piece in pieces_of(pattern, PIECE * length)]
+    if longest > 2 * PIECE * length:
+        fine = 0.25 * step / PIECE
+        laps = middle + np.arange(-reach, reach + fine, fine)
+        middle, reach = float(laps[int(np.argmax(likeness(pieces, laps)))]), 8 * fine
     fine = 0.25 * step * length / longest
     laps = middle + np.arange(-reach, reach + fine, fine)
     score = likeness(own, laps)
     top = int(np.argmax(score))
-    # Against a lap length at which nothing is expected to repeat.
-    if score[top] - float(np.median(score)) < 4.0 or top in (0, laps.size - 1):
+    # Against lap lengths at which nothing is expected to repeat.
+    elsewhere = likeness(own, length * (1 + CIRCUMFERENCE_RANGE * np.linspace(-1, 1, 21)))
+    if score[top] - float(np.median(elsewhere)) < 4.0 or top in (0, laps.size - 1):
         return None
     refined = laps[top] + fine * (peak(score, top) - top)
     # Two units below the top lie two standard errors away; the grid itself is worth a fraction of a step.

@@ -74,7 +74,10 @@ def place_loop_by_fixes(
         return None
     guide, good = _lapping(runs, lap)
     path = guide.travelled - guide.travelled[0]
-    line = draw_line(path[good], guide.east[good], guide.north[good], start=0.0, length=lap, closed=True)
+    trust = _trust(guide.travelled)[good]
+    line = draw_line(
+        path[good], guide.east[good], guide.north[good], trust, start=0.0, length=lap, closed=True
+    )
     lying = _find(runs, line, notes)
     line, lying, scales = _settle(line, lying, watch)
     zero = _gate_station(lying[0], scales)
@@ -119,8 +122,9 @@ def place_road_by_fixes(
     low, high = float(path[good].min()), float(path[good].max())
     if high - low < 50.0:
         return None
+    trust = _trust(guide.travelled)[good]
     line = draw_line(
-        path[good], guide.east[good], guide.north[good], start=low, length=high - low, closed=False
+        path[good], guide.east[good], guide.north[good], trust, start=low, length=high - low, closed=False
     )
     lying = _find(runs, line, notes)
     line, lying, scales = _settle(line, lying, watch)
@@ -146,6 +150,13 @@ def _lapping(runs: Sequence[TracedRun], lap: float) -> tuple[TracedRun, npt.NDAr
         most = int(np.argmax([run.length for run in runs]))
         return runs[most], np.isfinite(runs[most].east)
     return runs[most], back[most]
+
+
+def _trust(travelled: FloatArray) -> FloatArray:
+    """Return the weight of each fix: full at the usual pace, less when the rider creeps or stands."""
+    step = np.gradient(travelled)
+    usual = float(np.median(step))
+    return np.clip(step / usual, 0.0, 1.0) if usual > 0 else np.ones(travelled.size)
 
 
 def _signed_path(run: TracedRun | RideTrace, travelled: FloatArray) -> FloatArray:
@@ -247,7 +258,7 @@ def _rescaled(
 def _redrawn(
     line: ReferenceLine, lying: Sequence[_Lying], scales: dict[Group, tuple[float, float]]
 ) -> ReferenceLine:
-    station, east, north = [], [], []
+    station, east, north, trust = [], [], [], []
     for run in lying:
         assert run.passage is not None
         at = scales[run.traced.group][0] * run.path + run.offset
@@ -259,11 +270,12 @@ def _redrawn(
         station.append(at[use])
         east.append(run.traced.east[use])
         north.append(run.traced.north[use])
-    s, x, y = np.concatenate(station), np.concatenate(east), np.concatenate(north)
+        trust.append(_trust(run.traced.travelled)[use])
+    s, x, y, w = (np.concatenate(part) for part in (station, east, north, trust))
     if line.closed:
-        return draw_line(s, x, y, start=line.start, length=line.length, closed=True)
+        return draw_line(s, x, y, w, start=line.start, length=line.length, closed=True)
     low, high = float(s.min()), float(s.max())
-    return draw_line(s, x, y, start=low, length=high - low, closed=False)
+    return draw_line(s, x, y, w, start=low, length=high - low, closed=False)
 
 
 def _fix_error(lying: Sequence[_Lying], line: ReferenceLine) -> float:

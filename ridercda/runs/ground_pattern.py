@@ -43,6 +43,13 @@ class Pattern:
         return self.step * float(self.signals.shape[1])
 
 
+def pieces_of(pattern: Pattern, length: float) -> list[Pattern]:
+    """Return a pattern in pieces of some length, the last one shorter. [m]"""
+    size = max(int(length / pattern.step), 1)
+    count = pattern.signals.shape[1]
+    return [Pattern(pattern.step, pattern.signals[:, k : k + size].copy()) for k in range(0, count, size)]
+
+
 def pattern_of(run: TracedRun, mass: float, step: float) -> Pattern:
     """Return the signals of a run on a grid of distance ridden.
 

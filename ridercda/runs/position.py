@@ -11,10 +11,9 @@ import numpy.typing as npt
 
 from ridercda.physics.track import TrackShape
 from ridercda.rides.ride import Ride
-from ridercda.runs.closure_placement import place_by_closure
 from ridercda.runs.fixes import plane_of
-from ridercda.runs.gps_placement import place_loop_by_fixes, place_road_by_fixes
 from ridercda.runs.placement import Placed, Placement, Scale, lap_coordinate, passing_times
+from ridercda.runs.placing import TYPICAL_BIKE, TYPICAL_RIDER, place_runs
 from ridercda.runs.records import counted
 from ridercda.runs.reference_line import ReferenceLine
 from ridercda.runs.traced import Group, RideTrace, TracedRun, trace_ride, trace_runs
@@ -170,7 +169,8 @@ def locate(session: Session, rides: Mapping[str, Ride], watch: Watch = NO_WATCH)
         leg = venue.lap_length / 2 if venue.lap_length is not None else None
         traces = {ride: _turned_by_speed(trace, leg) for ride, trace in traces.items()}
     runs = trace_runs(session, traces)
-    placement = _placed(session, venue, runs, _spans(runs, traces), watch)
+    mass = (session.rider.mass or TYPICAL_RIDER) + (session.bike.mass or TYPICAL_BIKE)
+    placement = place_runs(venue, runs, _spans(runs, traces), mass, watch)
     return _path(venue, runs, placement)
 
 
@@ -189,42 +189,6 @@ def _spans(runs: Sequence[TracedRun], traces: Mapping[str, RideTrace]) -> list[R
         if points:
             spans.append(trace.part(slice(min(p.start for p in points), max(p.stop for p in points))))
     return spans
-
-
-def _with_fixes(spans: Sequence[RideTrace]) -> list[RideTrace]:
-    return [span for span in spans if np.isfinite(span.east).mean() > 1 / 3]
-
-
-def _placed(
-    session: Session, venue: Venue, runs: Sequence[TracedRun], spans: Sequence[RideTrace], watch: Watch
-) -> Placement:
-    fixed = [run for run in runs if run.fixed]
-    placement = None
-    notes: tuple[str, ...] = ()
-    if fixed and venue.kind in (VenueKind.LOOP, VenueKind.TRACK):
-        placement = place_loop_by_fixes(fixed, spans, venue.lap_length, watch)
-        if placement is None and venue.kind is VenueKind.LOOP:
-            notes = ("The recorded positions do not close a loop.",)
-    elif fixed:
-        out_and_back = venue.kind is VenueKind.OUT_AND_BACK
-        given = venue.lap_length if out_and_back else None
-        guides: Sequence[TracedRun | RideTrace] = fixed if out_and_back else _with_fixes(spans)
-        placement = place_road_by_fixes(fixed, guides, given, watch)
-    at_hand = placement.runs if placement is not None else {}
-    rest = [run for run in runs if run.run.id not in at_hand and (placement is None or not run.fixed)]
-    if not rest and placement is not None:
-        return placement
-    located = [run for run in runs if run.run.id in at_hand]
-    mass = (session.rider.mass or 75.0) + (session.bike.mass or 9.0)
-    closed = place_by_closure(venue, rest, placement, located, mass)
-    return Placement(
-        line=closed.line,
-        length=closed.length,
-        length_error=closed.length_error,
-        runs=closed.runs,
-        scales=closed.scales,
-        notes=(*notes, *closed.notes),
-    )
 
 
 def _path(venue: Venue, runs: Sequence[TracedRun], placement: Placement) -> VenuePath:

@@ -95,7 +95,14 @@ class ReferenceLine:
 
 
 def draw_line(
-    station: FloatArray, east: FloatArray, north: FloatArray, *, start: float, length: float, closed: bool
+    station: FloatArray,
+    east: FloatArray,
+    north: FloatArray,
+    trust: FloatArray,
+    *,
+    start: float,
+    length: float,
+    closed: bool,
 ) -> ReferenceLine:
     """Return a robust penalised cubic spline through fixes whose stations are known.
 
@@ -103,6 +110,8 @@ def draw_line(
     ----------
     station, east, north : ndarray, shape (n,)
         Finite. On a closed line stations may be of any lap. [m]
+    trust : ndarray, shape (n,)
+        Weight of each fix, 0 to 1: fixes taken while standing tell little of the way. [1]
     start, length : float
         Range of the line. [m]
     closed : bool
@@ -128,25 +137,25 @@ def draw_line(
         station = np.concatenate((station[low] - length, station, station[high] + length))
         east = np.concatenate((east[low], east, east[high]))
         north = np.concatenate((north[low], north, north[high]))
+        trust = np.concatenate((trust[low], trust, trust[high]))
         lo, hi = start - pad, start + length + pad
     else:
         lo, hi = start, start + length
         inside = (station >= lo) & (station <= hi)
-        station, east, north = station[inside], east[inside], north[inside]
+        station, east, north, trust = station[inside], east[inside], north[inside], trust[inside]
     spans = max(int(np.ceil((hi - lo) / KNOT)), 4)
     h = (hi - lo) / spans
-    density = max(station.size / (hi - lo), 1e-6)
+    density = max(float(trust.sum()) / (hi - lo), 1e-6)
     shortest = _shortest_wave(station, east, north, density)
     penalty = density * (shortest / (2 * np.pi)) ** 6 / h**5
-    weight = np.ones(station.size)
-    coefficients = _solve(station, east, north, weight, lo, h, spans, penalty)
+    coefficients = _solve(station, east, north, trust, lo, h, spans, penalty)
     for _ in range(2):
         off = np.hypot(
             east - _spline_at(coefficients[:, 0].copy(), station, lo, h, 3),
             north - _spline_at(coefficients[:, 1].copy(), station, lo, h, 3),
         )
         scale = max(float(np.median(off)), 0.05) if off.size else 1.0
-        weight = np.minimum(1.0, 2.0 * scale / np.maximum(off, 1e-9))
+        weight = trust * np.minimum(1.0, 2.0 * scale / np.maximum(off, 1e-9))
         coefficients = _solve(station, east, north, weight, lo, h, spans, penalty)
     nodes = start + step * np.arange(steps if closed else steps + 1, dtype=np.float64)
     values = [

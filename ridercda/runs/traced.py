@@ -9,8 +9,9 @@ import numpy as np
 import numpy.typing as npt
 
 from ridercda.physics.local_plane import LocalPlane
-from ridercda.rides.ride import LapTrigger, Ride
+from ridercda.rides.ride import Ride
 from ridercda.runs.fixes import track_on
+from ridercda.runs.marks import sorted_marks
 from ridercda.runs.records import points_in
 from ridercda.runs.turns import u_turns
 from ridercda.runs.wheel_distance import DistanceSource, wheel_distance
@@ -35,7 +36,7 @@ class RideTrace:
     turns : ndarray, shape (k,)
         Distances ridden at which the path turns back on itself. [m]
     presses : tuple of float
-        Ends of the laps that the rider closed by hand. [s]
+        Lap marks set by hand or at a gate. [s]
     """
 
     time: FloatArray
@@ -109,7 +110,7 @@ def trace_ride(ride: Ride, plane: LocalPlane | None) -> RideTrace:
         altitude=ride.channels.get("altitude", nothing),
         source=wheel.source,
         turns=u_turns(wheel.distance, east, north),
-        presses=tuple(lap.end for lap in ride.laps if lap.trigger is LapTrigger.MANUAL),
+        presses=sorted_marks(ride, wheel.distance, None).times if n > 1 else (),
     )
 
 
