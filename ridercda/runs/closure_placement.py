@@ -33,6 +33,7 @@ FloatArray = npt.NDArray[np.float64]
 CIRCUMFERENCE_RANGE = 0.03  # relative; no wheel is set further from the truth
 PIECE = 12  # laps
 PRESS_ERROR = 0.7  # [s] how late or early a lap button is pressed; common practice
+GUST_ERROR = 4e-3  # relative error of a loop told by speed alone: gusts shift its pattern; common practice
 LINE_ERROR = 3e-3  # relative error of a lap of a track: 0.2 m higher is 0.5 % of 250 m; common practice
 ALIKE = 0.4  # correlation from which two patterns are taken to show the same ground
 
@@ -169,6 +170,8 @@ def _scales(
             continue
         by_marks = _lap_by_marks(runs, length)
         by_ground = _lap_by_ground(runs, patterns, length, by_marks)
+        if by_ground is not None and venue.kind is VenueKind.LOOP and _speed_alone(runs, patterns):
+            by_ground = (by_ground[0], float(np.hypot(by_ground[1], GUST_ERROR * length)))
         found = by_ground or by_marks
         if found is None:
             scales[group] = Scale(1.0, 1e-2, "")
@@ -176,6 +179,10 @@ def _scales(
             lap, error = found
             scales[group] = Scale(length / lap, float(np.hypot(error / lap, shared)), "lap length")
     return scales
+
+
+def _speed_alone(runs: Sequence[TracedRun], patterns: dict[str, Pattern]) -> bool:
+    return not any(patterns[run.run.id].signals[:2].any() for run in runs)
 
 
 def _lap_by_marks(runs: Sequence[TracedRun], length: float) -> tuple[float, float] | None:
