@@ -380,8 +380,3 @@ def _laps(clock: FloatArray, cells: Sequence[str]) -> list[LapSpan]:
 def _shown(text: str) -> str:
     """Return a text of the file in quotes, cut where it is too long for a message."""
     return repr(text if len(text) <= 40 else f"{text[:39]}…")
-
-
-def canonical_units() -> Mapping[str, str]:
-    """Return the unit each column is taken in where its header names none."""
-    return {TIME: "s", **USUAL_UNITS}
