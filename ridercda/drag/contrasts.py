@@ -209,4 +209,4 @@ def _given(covariance: FloatArray, free: npt.NDArray[np.bool_], rows: slice) -> 
     if not held.size:
         return None
     block = covariance[np.ix_(held, held)]
-    return covariance - covariance[:, held] @ np.linalg.pinv(block) @ covariance[held]
+    return covariance - covariance[:, held] @ np.linalg.solve(block, covariance[held])

@@ -1,6 +1,7 @@
 """The innovations of one run: an extended Kalman filter with the gust as a latent process, and its sensitivities.
 
-State at the end of record k: speed now, speed one record ago, and the gust (east, north) met in the record. The
+State at the end of record k: speed now, speed one record ago, and the gust (east, north) then; what drives a record
+is the gust's mean over it, with the exact variance of that mean. The
 measured power drives the speed; the measurement is the mean speed of the record. The gust is an
 Ornstein-Uhlenbeck process about the run's mean wind, so the speed's answer to a gust is part of the model and not
 an error in the regressor, and the filter's own gust variance supplies the mean square that gusts add to the drag.
@@ -180,28 +181,44 @@ def run_innovations(
                 s_v[SPEED_FACTOR] = v / factor
             continue
 
-        # The gust moves on first: it acts over the whole record.
+        # The gust moves on: to its mean over the record, which acts, and to its end. Taking the end for the mean
+        # would make it change a third too much from record to record and so overstate its strength.
         fade = math.exp(-dt / noise[GUST_TIME])
+        halfway = 0.5 * (1.0 + fade)
+        fresh = gust_variance * (1.0 - fade * fade)
+        acts_e = gust_e * halfway
+        acts_n = gust_n * halfway
         gust_e *= fade
         gust_n *= fade
-        fresh = gust_variance * (1.0 - fade * fade)
+        m_ee = p[2, 2] * halfway * halfway + fresh / 3.0
+        m_nn = p[3, 3] * halfway * halfway + fresh / 3.0
+        m_en = p[2, 3] * halfway * halfway
+        x_ee = p[2, 2] * halfway * fade + 0.5 * fresh  # mean with end
+        x_nn = p[3, 3] * halfway * fade + 0.5 * fresh
+        x_en = p[2, 3] * halfway * fade
+        c_vme = p[0, 2] * halfway
+        c_vmn = p[0, 3] * halfway
         g_ee = p[2, 2] * fade * fade + fresh
         g_nn = p[3, 3] * fade * fade + fresh
         g_en = p[2, 3] * fade * fade
         c_ve = p[0, 2] * fade
         c_vn = p[0, 3] * fade
+        # The mean square over the record is of the gust itself, not of its mean.
+        s_ee = 0.5 * (p[2, 2] + g_ee)
+        s_nn = 0.5 * (p[3, 3] + g_nn)
+        s_en = 0.5 * (p[2, 3] + g_en)
 
         # Forces at the middle of the record.
         sin_h = table[k, SIN_HEADING]
         cos_h = table[k, COS_HEADING]
         rho = table[k, DENSITY]
         q = table[k, PATH_RATIO]
-        east = wind_east + gust_e
-        north = wind_north + gust_n
+        east = wind_east + acts_e
+        north = wind_north + acts_n
         head = east * sin_h + north * cos_h
         cross = east * cos_h - north * sin_h
-        var_head = sin_h * sin_h * g_ee + cos_h * cos_h * g_nn + 2.0 * sin_h * cos_h * g_en
-        var_cross = cos_h * cos_h * g_ee + sin_h * sin_h * g_nn - 2.0 * sin_h * cos_h * g_en
+        var_head = sin_h * sin_h * s_ee + cos_h * cos_h * s_nn + 2.0 * sin_h * cos_h * s_en
+        var_cross = cos_h * cos_h * s_ee + sin_h * sin_h * s_nn - 2.0 * sin_h * cos_h * s_en
         measured = table[k, POWER]
         # The scale error acts on the run's mean power: record by record the meter's noise shrinks the speed's
         # answer to its own readings, which would pass for a scale error that is not there.
@@ -264,14 +281,14 @@ def run_innovations(
         # Covariance: speed now from speed before and the gust of this record.
         vv = (
             t_v * t_v * p[0, 0]
-            + t_e * t_e * g_ee
-            + t_n * t_n * g_nn
-            + 2.0 * (t_v * t_e * c_ve + t_v * t_n * c_vn + t_e * t_n * g_en)
+            + t_e * t_e * m_ee
+            + t_n * t_n * m_nn
+            + 2.0 * (t_v * t_e * c_vme + t_v * t_n * c_vmn + t_e * t_n * m_en)
             + shake * shake
         )
-        vp = t_v * p[0, 0] + t_e * c_ve + t_n * c_vn
-        ve = t_v * c_ve + t_e * g_ee + t_n * g_en
-        vn = t_v * c_vn + t_e * g_en + t_n * g_nn
+        vp = t_v * p[0, 0] + t_e * c_vme + t_n * c_vmn
+        ve = t_v * c_ve + t_e * x_ee + t_n * x_en
+        vn = t_v * c_vn + t_e * x_en + t_n * x_nn
         pp = p[0, 0]
         p[0, 0] = vv
         p[0, 1] = vp
@@ -306,11 +323,11 @@ def run_innovations(
             drive[TYRE_WARM_UP] = -crr0 * table[k, WARM_UP] * weight * table[k, LOAD] * gain_theta
             by_slope = -weight * sign * gain_theta
             for j in range(wanted):
-                s_e[j] *= fade
-                s_n[j] *= fade
                 before = s_v[j]
                 s_p[j] = before
-                s_v[j] = t_v * before + t_e * s_e[j] + t_n * s_n[j]
+                s_v[j] = t_v * before + halfway * (t_e * s_e[j] + t_n * s_n[j])
+                s_e[j] *= fade
+                s_n[j] *= fade
             for j in range(LEADING):
                 s_v[j] += drive[j]
             for i in range(4):

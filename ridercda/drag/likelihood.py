@@ -34,7 +34,7 @@ NOISE_ROUNDS = 25
 NOISE_SETTLED = 0.03  # of a standard deviation of each noise parameter
 GAUSS_NEWTON_ROUNDS = 12
 STEP_HALVINGS = 8
-SETTLED = 0.01  # of a standard deviation of each unknown
+SETTLED = 0.02  # of a standard deviation, over all unknowns together
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -318,8 +318,9 @@ def fit(model: Model, watch: Watch = NO_WATCH) -> Fit:
 def settle(model: Model, here: Pass, rounds: int) -> Pass:
     """Return a pass at the optimum for the noise of `here`, reached by Gauss-Newton within `rounds` steps."""
     for _ in range(rounds):
-        spread = np.sqrt(np.diag(_inverse(here.information)))
-        if np.all(np.abs(here.step) < SETTLED * spread):
+        if (
+            -float(here.gradient @ here.step) < SETTLED**2
+        ):  # the step in standard deviations, all unknowns together
             break
         there = _stepped(model, here, np.zeros(at.NOISES))
         if there is None:
@@ -416,4 +417,5 @@ def _at_least_prior(information: FloatArray, prior_sd: FloatArray) -> FloatArray
 def _inverse(matrix: FloatArray) -> FloatArray:
     """Return the inverse of a positive definite matrix whose entries span many decades."""
     scale = 1.0 / np.sqrt(np.diag(matrix))
-    return np.asarray(np.linalg.inv(matrix * np.outer(scale, scale)) * np.outer(scale, scale))
+    outer = np.outer(scale, scale)
+    return np.asarray(cho_solve(cho_factor(matrix * outer), np.eye(scale.size)) * outer)

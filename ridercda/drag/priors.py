@@ -37,6 +37,7 @@ DRAGGED_AIR_DRIFT_SD: Final = 0.02  # [m/s] between runs
 
 SLOPE_SD: Final = 0.10  # of the road's slope
 SLOPE_STEP_SD: Final = 0.025  # between knots 40 m apart; grows with the square root of the distance
+SLOPE_BEND_SD: Final = 0.004  # of the slope's second difference at knots 40 m apart: roads bend gently
 NODE_SPACING: Final = 40.0  # [m]
 MOST_NODES: Final = 160
 ALTITUDE_SD: Final = 2.0  # [m] of a head unit's altitude profile after averaging, per node

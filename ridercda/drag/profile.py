@@ -92,7 +92,12 @@ def profile_evidence(day: Day, nodes: VenueNodes) -> tuple[FloatArray, FloatArra
     difference = np.roll(np.eye(n), 1, axis=1) - np.eye(n)
     if not nodes.closed:
         difference = difference[:-1]
+    bend_sd = priors.SLOPE_BEND_SD * (nodes.spacing / priors.NODE_SPACING) ** 1.5
+    bend = np.roll(np.eye(n), 1, axis=1) + np.roll(np.eye(n), -1, axis=1) - 2.0 * np.eye(n)
+    if not nodes.closed:
+        bend = bend[1:-1]
     precision = np.eye(n) / (n * priors.SLOPE_SD**2) + difference.T @ difference / step_sd**2
+    precision += bend.T @ bend / bend_sd**2
     if nodes.closed:
         total = np.full(n, nodes.spacing)
         precision = precision + np.outer(total, total) / CLOSURE_SD**2

@@ -19,6 +19,7 @@ WARMER = 2.0  # [K] between the means of two setups
 CDA_BAND = (0.15, 0.70)  # [m^2] track specialist to upright (from memory)
 CRR_BAND = (0.0010, 0.0120)  # smooth track to rough road (from memory)
 GUST_DOUBT = 0.25  # of the gust strength
+STRONG_GUST = 0.8  # [m/s]
 
 
 def remarks(
@@ -65,16 +66,14 @@ def remarks(
             )
     found += _temperature(fit, pooled)
     found += _plausible(setups, crr)
-    if (
-        not day.flat
-        and fit.log_noise_covariance[at.GUST_SD, at.GUST_SD] > GUST_DOUBT**2
-        and fit.noise[at.GUST_SD] > 0.25
-    ):
+    doubt = float(np.sqrt(fit.log_noise_covariance[at.GUST_SD, at.GUST_SD]))
+    gust = float(fit.noise[at.GUST_SD])
+    if not day.flat and (gust > STRONG_GUST or (doubt > GUST_DOUBT and gust > 0.5 * STRONG_GUST)):
         found.append(
             SolveWarning(
                 "gusts-uncertain",
-                "The strength of the gusts is poorly known on this day; absolute CdA and Crr lean on it and their "
-                "intervals say so. Differences hardly do.",
+                f"Gusts of {gust:.1f} m/s: absolute CdA tends to come out low and Crr high on such a day, because both "
+                "lean on how strong the gusts were; their intervals are wide for that. Differences hardly lean on it.",
             )
         )
     if day.venue is VenueKind.OUT_AND_BACK and _one_speed(fit):
