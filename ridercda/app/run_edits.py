@@ -9,7 +9,7 @@ from PySide6.QtCore import QObject
 from ridercda.app.desk import Desk
 from ridercda.app.letters import badges, next_letter
 from ridercda.session import edits
-from ridercda.session.document import Run, Session, Setup
+from ridercda.session.document import Run, Session, Setup, Venue, VenueKind
 
 LEAST_RUN = 5.0  # s
 
@@ -39,11 +39,13 @@ class RunEdits(QObject):
         if self._desk.document.edit(self.tr("New run"), change):
             self._desk.selection.pick_run(run_id)
 
-    def accept(self, runs: tuple[Run, ...]) -> None:
-        """Take proposed runs, all in one step; the first bring the first setup."""
+    def accept(self, runs: tuple[Run, ...], kind: VenueKind | None = None) -> None:
+        """Take proposed runs, all in one step; the first bring the first setup and say what the venue is."""
 
         def change(before: Session) -> Session:
             session = before if before.setups else with_new_setup(before)
+            if kind is not None and session.venue is None:
+                session = edits.set_venue(session, Venue(kind))
             known = {setup.id for setup in session.setups}
             setup = session.baseline.id if session.baseline else session.setups[0].id
             taken = [run.id for run in session.runs]

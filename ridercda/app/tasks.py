@@ -8,11 +8,12 @@ from typing import TYPE_CHECKING
 
 from ridercda.drag.estimate import Estimate
 from ridercda.rides.ride import Ride
-from ridercda.session.document import RideEntry, Run, Session
+from ridercda.session.document import RideEntry, Run, Session, Venue, VenueKind
 from ridercda.watch import Watch
 
 if TYPE_CHECKING:
     from ridercda.app.lap_traces import Laps
+    from ridercda.app.proposals import Proposed
     from ridercda.workspace.workspace import Workspace
 
 
@@ -63,9 +64,20 @@ def lap_traces(watch: Watch) -> Laps | None:
     )
 
 
-def propose_runs(watch: Watch, ride_id: str, ride: Ride, session: Session) -> tuple[Run, ...]:
-    """Return the runs proposed for a ride."""
-    return ()
+def propose_runs(watch: Watch, ride_id: str, ride: Ride, venue: Venue | None) -> Proposed:
+    """Return the runs proposed for a ride; without a venue, as if it were the first kind that repeats there."""
+    from ridercda.app.proposals import Proposed
+    from ridercda.runs.propose import propose_runs as propose
+
+    guesses = [venue] if venue is not None else [Venue(VenueKind.LOOP), Venue(VenueKind.OUT_AND_BACK)]
+    found = Proposed()
+    for guess in guesses:
+        proposal = propose(ride, guess, watch=watch)
+        runs = tuple(Run("", ride_id, "", run.start, run.end, laps=run.laps) for run in proposal.runs)
+        found = Proposed(runs, guess.kind if venue is None else None, proposal.notes)
+        if any(run.lap_count for run in proposal.runs):
+            break
+    return found
 
 
 def warm_up(watch: Watch) -> None:

@@ -219,7 +219,7 @@ class MainWindow(QMainWindow):
     def accept_proposed(self) -> None:
         """Take all proposed runs."""
         if runs := self.desk.proposals.runs:
-            self.runs.accept(runs)
+            self.runs.accept(runs, self.desk.proposals.kind)
 
     def split_picked(self) -> None:
         """Split the picked run at the moment pointed at, else in the middle."""

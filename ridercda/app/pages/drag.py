@@ -131,6 +131,15 @@ class DragPage(Page):
                 "page.runs",
                 self.tr("Go to Runs"),
             )
+        if session.rider.mass is None or session.bike.mass is None:
+            return Blank(
+                self.tr("How heavy are rider and bike?"),
+                self.tr(
+                    "Without their mass no figure can be had. Fill in what is asked for on the Rides page."
+                ),
+                "page.rides",
+                self.tr("Go to Rides"),
+            )
         if solving.state is State.WAITING:
             return Blank(
                 self.tr("Reading the rides…"), self.tr("Figures follow as soon as the rides are read.")

@@ -11,6 +11,7 @@ from PySide6.QtWidgets import QFileDialog, QHBoxLayout, QLabel, QVBoxLayout
 from ridercda.app.desk import Desk
 from ridercda.app.figures import clock, duration
 from ridercda.app.pages.faults import FaultTable
+from ridercda.app.pages.needs import NeedsCard
 from ridercda.app.pages.page import Blank, Page
 from ridercda.app.pages.venue_view import VenueMap, map_tracks
 from ridercda.app.run_edits import RunEdits
@@ -69,6 +70,8 @@ class RidesPage(Page):
         self._map_card = ChartCard(self.theme, self.tr("The venue, from the track"), self._map)
         left = QVBoxLayout()
         left.setSpacing(px(12))
+        self._needs = NeedsCard(desk)
+        left.addWidget(self._needs)
         left.addWidget(self._rides, 3)
         left.addWidget(self._faults_card, 6)
         layout = QHBoxLayout(self.content)
@@ -131,6 +134,7 @@ class RidesPage(Page):
         self._faults.show_ride(picked)
         count = len(item.ride.faults) if item and item.ride else 0
         self._faults_card.set_note(self.tr("%n fault(s) in {}", "", count).format(picked) if count else "")
+        self._needs.refresh()
         self._map.show_tracks(map_tracks(desk))
         self._map_card.refresh_table()
 

@@ -22,7 +22,7 @@ from ridercda.app.widgets.card import Card
 from ridercda.app.widgets.links import link, link_line
 from ridercda.app.widgets.table import Column, TableModel, TableView
 from ridercda.drag.estimate import RunEstimate
-from ridercda.session.document import Run
+from ridercda.session.document import Run, VenueKind
 from ridercda.units import Kind
 
 
@@ -148,10 +148,19 @@ class RunsPage(Page):
                 self.tr("Looking for runs…"),
                 self.tr("Laps that repeat are found in the rides and proposed as runs."),
             )
-        return Blank(
-            self.tr("No runs found by themselves"),
-            self.tr("Drag over the day strip where a setup was ridden; letter keys say which setup it was."),
+        words = self.tr(
+            "Drag over the day strip where a setup was ridden; letter keys say which setup it was."
         )
+        return Blank(self.tr("No runs found by themselves"), " ".join((*self.desk.proposals.notes, words)))
+
+    def _offered(self, count: int) -> str:
+        words = self.tr("%n run(s) proposed; they stand dashed in the day strip.", "", count)
+        kinds = {
+            VenueKind.LOOP: self.tr("The venue is taken as a loop."),
+            VenueKind.OUT_AND_BACK: self.tr("The venue is taken as out and back."),
+        }
+        kind = self.desk.proposals.kind
+        return f"{words} {kinds[kind]}" if kind in kinds else words
 
     def refresh(self) -> None:
         """Show runs and laps."""
@@ -161,9 +170,7 @@ class RunsPage(Page):
         self._offer_words.setFont(self.theme.font(Type.PAGE))
         proposed = desk.proposals.runs
         self._offer.setVisible(bool(proposed))
-        self._offer_words.setText(
-            self.tr("%n run(s) proposed; they stand dashed in the day strip.", "", len(proposed))
-        )
+        self._offer_words.setText(self._offered(len(proposed)))
         rides = desk.shelf.rides()
         axis = axis_of(desk.session, rides)
         badges = desk.badges()
