@@ -13,6 +13,7 @@ IntArray = npt.NDArray[np.int64]
 BoolArray = npt.NDArray[np.bool_]
 
 CLOSE = 25.0  # [m] two passes of one place lie within this
+REPEAT = 0.35  # of the best share of repeats that the first one must reach
 SHORTEST = 120.0  # [m] no venue is shorter once round
 
 
@@ -36,7 +37,8 @@ def lap_from_fixes(
     Notes
     -----
     For each lag, the share of points that lie within 25 m of the point one lag on. The first lag whose share
-    is nearly the highest is the lap; it is refined by the least median distance.
+    is a good part of the highest is the lap (where runs of two laps are ridden alike, the way from run to run
+    repeats better than the lap does); it is refined by the least median distance.
     """
     spacing = 10.0
     gridded = [g for g in (_on_grid(*path, spacing) for path in paths) if g is not None]
@@ -61,9 +63,9 @@ def lap_from_fixes(
     best = float(share.max())
     if best < 0.15:  # an hour's way to the venue may be part of the path
         return None
-    start = int(np.argmax(share >= 0.8 * best))
+    start = int(np.argmax(share >= REPEAT * best))
     stop = start
-    while stop + 1 < share.size and share[stop + 1] >= 0.8 * best:
+    while stop + 1 < share.size and share[stop + 1] >= REPEAT * best:
         stop += 1
     middle = 0.5 * float(lags[start] + lags[stop]) * spacing
     fine = np.arange(middle - 40.0, middle + 40.5, 4.0)

@@ -264,13 +264,27 @@ def _gates(run: TracedRun, coordinate: FloatArray, lap: float) -> tuple[float, .
     """Return when laps begin and end: as given for the run, else each time it is back where it started."""
     if run.run.laps:
         return run.run.laps
-    # A run cut at a gate may miss a record's way of its last lap.
-    slack = min(0.01 * lap, 20.0)
-    laps = int((coordinate[-1] - coordinate[0] + slack) // lap) if np.isfinite(lap) else 0
+    if not np.isfinite(lap):
+        return ()
+    time, coordinate = _to_the_edges(run, coordinate)
+    slack = min(0.01 * lap, 20.0)  # a run cut at a gate by hand
+    laps = int((coordinate[-1] - coordinate[0] + slack) // lap)
     if laps == 0:
         return ()
     goals = coordinate[0] + lap * np.arange(laps + 1)
-    return tuple(float(t) for t in passing_times(run.time, coordinate, goals))
+    return tuple(float(t) for t in passing_times(time, coordinate, goals))
+
+
+def _to_the_edges(run: TracedRun, coordinate: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Add the moments at which a run begins and ends, which lie up to a record beyond its own records."""
+    interval = float(np.median(np.diff(run.time)))
+    ahead = min(max(run.time[0] - run.run.start, 0.0), interval)
+    end = run.time[-1] if run.run.end is None else run.run.end
+    behind = min(max(end - run.time[-1], 0.0), interval)
+    time = np.concatenate(([run.time[0] - ahead], run.time, [run.time[-1] + behind]))
+    first = coordinate[0] - ahead * run.speed[0]
+    last = coordinate[-1] + behind * run.speed[-1]
+    return time, np.concatenate(([first], coordinate, [last]))
 
 
 def _laps(time: FloatArray, gates: tuple[float, ...]) -> IntArray:
