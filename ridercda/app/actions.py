@@ -65,18 +65,28 @@ def file_actions() -> tuple[Action, ...]:
     """Return what concerns files."""
     return (
         Action("session.new", _tr("New session"), FILE, lambda w: w.new_session(), "Ctrl+N"),
-        Action("session.open", _tr("Open session…"), FILE, lambda w: w.ask_open(), "Ctrl+O"),
+        Action("session.open", _tr("Open session…"), FILE, lambda w: w.questions.open(), "Ctrl+O"),
         Action("session.start", _tr("Start page"), FILE, lambda w: w.show_start()),
         Action(
             "ride.add",
             _tr("Add ride files…"),
             FILE,
-            lambda w: w.ask_rides(),
+            lambda w: w.questions.rides(),
             "Ctrl+Shift+O",
             starts_group=True,
         ),
-        Action("session.save", _tr("Save"), FILE, lambda w: w.save(), "Ctrl+S", _open, starts_group=True),
-        Action("session.save_as", _tr("Save as…"), FILE, lambda w: w.ask_save_as(), "Ctrl+Shift+S", _open),
+        Action(
+            "session.save",
+            _tr("Save"),
+            FILE,
+            lambda w: w.questions.save(),
+            "Ctrl+S",
+            _open,
+            starts_group=True,
+        ),
+        Action(
+            "session.save_as", _tr("Save as…"), FILE, lambda w: w.questions.save_as(), "Ctrl+Shift+S", _open
+        ),
         Action("window.quit", _tr("Quit"), FILE, lambda w: w.quit(), "Ctrl+Q", starts_group=True),
     )
 

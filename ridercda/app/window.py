@@ -6,7 +6,7 @@ from pathlib import Path
 
 from PySide6.QtCore import QSize
 from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
-from PySide6.QtWidgets import QFileDialog, QMainWindow, QMessageBox, QStackedWidget, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QMainWindow, QStackedWidget, QVBoxLayout, QWidget
 
 from ridercda.app.actions import all_actions
 from ridercda.app.autosave import Autosave, Kept, drop, unsaved_work
@@ -19,9 +19,10 @@ from ridercda.app.notice import Notice
 from ridercda.app.pages import PAGES
 from ridercda.app.pages.start import StartPage, is_session
 from ridercda.app.palette import Palette
+from ridercda.app.questions import Questions
 from ridercda.app.reasons import reason_menu
 from ridercda.app.run_edits import RunEdits
-from ridercda.app.samples import Sample, user_folder
+from ridercda.app.samples import Sample
 from ridercda.app.side.panel import DAY, SETUP
 from ridercda.app.strip.day_strip import DayStrip
 from ridercda.app.theme import ZOOMS
@@ -37,6 +38,7 @@ class MainWindow(QMainWindow):
         self._autosave_root = autosave_root
         self.autosave = Autosave(desk.document, autosave_root, self)
         self.files = SessionFiles(desk, self.autosave, self)
+        self.questions = Questions(self, desk, self.files)
         self.runs = RunEdits(desk, self)
         self.notice = Notice(desk.theme)
         self.workbench = Workbench(desk, self.runs, self.notice)
@@ -62,13 +64,13 @@ class MainWindow(QMainWindow):
         desk.document.edit_refused.connect(self.notice.show_trouble)
         desk.document.session_changed.connect(self._name_window)
         desk.document.undo_stack.cleanChanged.connect(self._name_window)
-        self.files.failed.connect(self.notice.show_trouble)
+        self.files.failed.connect(self._on_files_failed)
         self.files.opened.connect(self._on_files_opened)
         self.files.saved.connect(lambda: self.notice.show_news(self.tr("Saved.")))
         self.start.sample_chosen.connect(self.open_sample)
         self.start.recent_chosen.connect(self.open_session)
-        self.start.open_asked.connect(self.ask_open)
-        self.start.rides_asked.connect(self.ask_rides)
+        self.start.open_asked.connect(self.questions.open)
+        self.start.rides_asked.connect(self.questions.rides)
         self.start.new_asked.connect(self.new_session)
         self.strip.exclude_requested.connect(self.ask_reason)
         self.workbench.side.exclude_requested.connect(self.ask_reason)
@@ -103,19 +105,19 @@ class MainWindow(QMainWindow):
         self.show_page("drag" if self.desk.session.runs else "rides")
         self._name_window()
 
+    def _on_files_failed(self, words: str) -> None:
+        self._stack.setCurrentWidget(self.workbench)  # where messages are shown
+        self.notice.show_trouble(words)
+
     def offer_recovery(self) -> None:
         """Offer what an earlier start left unsaved."""
-        found = unsaved_work(self._autosave_root)
-        if not found:
-            return
-        kept: Kept = found[0]
-        words = self.tr("Unsaved changes to “{}” were kept from an earlier start.").format(kept.session.name)
-        self._stack.setCurrentWidget(self.workbench)
-        self.notice.show_offer(
-            words,
-            (self.tr("Recover"), lambda: self.files.recover(kept)),
-            (self.tr("Discard"), lambda: self._discard(kept)),
-        )
+        if kept := next(iter(unsaved_work(self._autosave_root)), None):
+            self._stack.setCurrentWidget(self.workbench)
+            words = self.tr("Unsaved changes to “{}” were kept from an earlier start.").format(
+                kept.session.name
+            )
+            recover = (self.tr("Recover"), lambda: self.files.recover(kept))
+            self.notice.show_offer(words, recover, (self.tr("Discard"), lambda: self._discard(kept)))
 
     def _discard(self, kept: Kept) -> None:
         drop(kept)
@@ -124,78 +126,23 @@ class MainWindow(QMainWindow):
 
     def new_session(self) -> None:
         """Begin an empty session."""
-        if self._may_leave():
+        if self.questions.may_leave():
             self.files.new()
 
     def open_session(self, path: Path) -> None:
         """Open a session."""
-        if self._may_leave() and not self.files.open(path):
-            self._stack.setCurrentWidget(self.workbench if self.desk.document.is_open else self.start)
-            if not self.desk.document.is_open:
-                QMessageBox.warning(
-                    self, self.tr("Not opened"), self.tr("This session could not be opened: {}").format(path)
-                )
+        if self.questions.may_leave():
+            self.files.open(path)
 
     def open_sample(self, sample: Sample) -> None:
         """Open a copy of a sample."""
-        if self._may_leave():
+        if self.questions.may_leave():
             self.files.open_sample(sample)
-
-    def ask_open(self) -> None:
-        """Ask which session to open."""
-        name, _ = QFileDialog.getOpenFileName(
-            self, self.tr("Open session"), str(user_folder()), self.tr("Sessions (session.toml)")
-        )
-        if name:
-            self.open_session(Path(name))
-
-    def ask_rides(self) -> None:
-        """Ask which ride files to add."""
-        patterns = " ".join(f"*{suffix}" for suffix in RIDE_SUFFIXES)
-        names, _ = QFileDialog.getOpenFileNames(
-            self,
-            self.tr("Add ride files"),
-            str(Path.home()),
-            self.tr("Ride files ({});;All files (*)").format(patterns),
-        )
-        self.files.add_rides(map(Path, names))
-
-    def save(self) -> bool:
-        """Save, asking for a place the first time."""
-        return self.files.save() if self.files.has_place else self.ask_save_as()
-
-    def ask_save_as(self) -> bool:
-        """Ask for a folder and save there."""
-        user_folder().mkdir(parents=True, exist_ok=True)
-        name, _ = QFileDialog.getSaveFileName(
-            self,
-            self.tr("Save session as a folder"),
-            str(user_folder() / (self.desk.session.name or "session")),
-        )
-        return bool(name) and self.files.save_as(Path(name))
 
     def show_start(self) -> None:
         """Show the start page; the session stays open behind it."""
         self.start.refresh()
         self._stack.setCurrentWidget(self.start)
-
-    def _may_leave(self) -> bool:
-        """Return whether the open session may be left: saved, or given up on request."""
-        if self.desk.document.undo_stack.isClean():
-            return True
-        buttons = QMessageBox.StandardButton
-        answer = QMessageBox.question(
-            self,
-            self.tr("Save changes?"),
-            self.tr("“{}” has changes that are not saved.").format(self.desk.session.name),
-            buttons.Save | buttons.Discard | buttons.Cancel,
-        )
-        if answer == buttons.Save:
-            return self.save()
-        if answer == buttons.Discard:
-            self.autosave.forget()
-            return True
-        return False
 
     # -- what pages and menus ask for --------------------------------------------------------------------
 
@@ -283,7 +230,7 @@ class MainWindow(QMainWindow):
 
     def closeEvent(self, event: QCloseEvent) -> None:
         """Leave nothing unsaved without asking, then remember and tidy up."""
-        if not self._may_leave():
+        if not self.questions.may_leave():
             event.ignore()
             return
         settings = self.desk.settings

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import shutil
-from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
@@ -26,14 +25,14 @@ ORDER = "abccbaabccba"  # as the sample's day was ridden
 
 
 @pytest.fixture
-def window(qapp: object, settings: Settings, tmp_path: Path, qtbot: QtBot) -> Iterator[MainWindow]:
+def window(qapp: object, settings: Settings, tmp_path: Path, qtbot: QtBot) -> MainWindow:
     made = MainWindow(build_desk(settings), tmp_path / "unsaved")
-    qtbot.addWidget(made)
+    qtbot.addWidget(
+        made, before_close_func=lambda each: each.desk.document.undo_stack.setClean()
+    )  # asks nothing
     made.resize(1280, 800)
     made.show()
-    yield made
-    made.desk.document.undo_stack.setClean()
-    made.close()
+    return made
 
 
 def dropped(window: MainWindow, *paths: Path) -> None:
@@ -142,7 +141,9 @@ def test_a_missing_file_is_said_and_found_again(window: MainWindow, qtbot: QtBot
     assert len(figures(window)) == 3
 
 
-def test_a_file_that_is_no_ride_is_told_in_one_sentence(window: MainWindow, qtbot: QtBot, tmp_path: Path) -> None:
+def test_a_file_that_is_no_ride_is_told_in_one_sentence(
+    window: MainWindow, qtbot: QtBot, tmp_path: Path
+) -> None:
     path = tmp_path / "notes.txt"
     path.write_text("nothing to see here\n", encoding="utf-8")
     dropped(window, path)
