@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Collection
 from dataclasses import replace
 
 from PySide6.QtCore import QObject
 
 from ridercda.app.desk import Desk
 from ridercda.app.letters import badges, next_letter
+from ridercda.errors import SessionError
+from ridercda.runs.assign import parse_order
 from ridercda.session import edits
 from ridercda.session.document import Run, Session, Setup, Venue, VenueKind
 
@@ -28,7 +31,9 @@ class RunEdits(QObject):
         if end - start < LEAST_RUN:
             return
         setup = self._desk.selection.setup or (session.baseline.id if session.baseline else "")
-        run_id = edits.fresh_id([run.id for run in session.runs], next_run_id(session))
+        run_id = edits.fresh_id(
+            [run.id for run in session.runs], next_run_id([run.id for run in session.runs])
+        )
 
         def change(before: Session) -> Session:
             with_setup = before if setup else with_new_setup(before)
@@ -51,7 +56,7 @@ class RunEdits(QObject):
             taken = [run.id for run in session.runs]
             added = []
             for run in runs:
-                run_id = edits.fresh_id(taken, run.id or next_run_id(session))
+                run_id = run.id if run.id and run.id not in taken else next_run_id(taken)
                 taken.append(run_id)
                 added.append(replace(run, id=run_id, setup=run.setup if run.setup in known else setup))
             return edits.add_runs(session, added)
@@ -92,6 +97,27 @@ class RunEdits(QObject):
 
             text = self.tr("Assign %n run(s) to new setup {}", "", len(run_ids)).format(letter)
             self._desk.document.edit(text, change)
+
+    def assign_in_order(self, text: str) -> None:
+        """Say in one line in which order the setups were ridden; letters that are next make their setups."""
+
+        def change(session: Session) -> Session:
+            while (letter := next_letter(session)) and letter in text.upper():
+                session = with_new_setup(session)
+            order = parse_order(text, session.setups)
+            runs = sorted(session.runs, key=lambda run: (ride_place[run.ride], run.start))
+            if len(order) > len(runs):
+                words = self.tr("the order names {} runs, but there are {}")
+                raise SessionError(words.format(len(order), len(runs)), key="run.setup")
+            for run, setup in zip(runs, order, strict=False):
+                if setup is None:
+                    session = edits.exclude_runs(session, (run.id,), self.tr("not part of the test"))
+                else:
+                    session = edits.assign_runs(session, (run.id,), setup.id)
+            return session
+
+        ride_place = {ride.id: place for place, ride in enumerate(self._desk.session.rides)}
+        self._desk.document.edit(self.tr("Assign runs in order"), change)
 
     def split(self, run_id: str, time: float) -> None:
         """Split a run in two."""
@@ -144,10 +170,9 @@ def with_new_setup(session: Session) -> Session:
     return edits.add_setup(session, Setup(setup_id, letter=letter, name=name, baseline=not session.setups))
 
 
-def next_run_id(session: Session) -> str:
+def next_run_id(taken: Collection[str]) -> str:
     """Return the next number that no run has."""
-    taken = {run.id for run in session.runs}
-    number = len(session.runs) + 1
+    number = len(taken) + 1
     while str(number) in taken:
         number += 1
     return str(number)

@@ -37,7 +37,7 @@ QPushButton[main="true"]:hover { background: $accent_hover; }
 QPushButton[main="true"]:focus { border: 1px solid $ink; }
 QPushButton[main="true"]:disabled { background: $hairline; color: $quiet; }
 QPushButton[flush="true"] { padding: ${s4}px 0; border: 0; }
-QPushButton[dropdown="true"] { padding-right: ${s16}px; }
+QPushButton[dropdown="true"] { padding: ${s4}px ${s16}px ${s4}px 0; }
 QPushButton::menu-indicator { image: url($arrow); width: ${s12}px; height: ${s12}px;
   subcontrol-origin: padding; subcontrol-position: right center; }
 QPushButton[flush="true"]:hover { background: transparent; color: $ink; }

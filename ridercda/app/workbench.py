@@ -147,20 +147,19 @@ class Workbench(QWidget):
         narrow = self.width() < self._desk.theme.px(DRAWER_BELOW)
         if narrow != self._is_drawer:
             self._is_drawer = narrow
+            self.side.set_drawer(on=narrow)
             self._drawer_open = False
             self._row.removeWidget(self.side)
             if narrow:
                 self.side.setParent(self._body)
-                self.side.setAutoFillBackground(True)
                 self.side.installEventFilter(self)
             else:
-                self.side.setAutoFillBackground(False)
                 self._row.insertWidget(0, self.side)
         self._drawer_button.setVisible(narrow)
         self._drawer_button.setChecked(narrow and self._drawer_open)
         self.side.setVisible(self._drawer_open if narrow else self._side_wanted)
         if narrow and self._drawer_open:
-            self.side.setGeometry(QRect(0, 0, self.side.width(), self._body.height()))
+            self.side.setGeometry(QRect(0, 0, self.side.minimumWidth(), self._body.height()))
             self.side.raise_()
         self.side_changed.emit()
 

@@ -279,3 +279,26 @@ def test_the_window_shows_what_the_estimate_says(full: MainWindow) -> None:
     assert "9 May 2026 · 12 runs · 3 setups · air 1.201 kg/m³" in full.header._about.text().replace(
         "\u00a0", " "
     )
+
+
+def test_the_window_imports_nothing_compiled_or_slow() -> None:
+    code = (
+        "import sys, ridercda.app.main\n"
+        "print([name for name in ('numba', 'llvmlite', 'scipy', 'pint', 'rich', 'fitdecode') if name in sys.modules])"
+    )
+    told = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    assert told.stdout.strip() == "[]"
+
+
+def test_setups_are_assigned_by_one_typed_order(full: MainWindow) -> None:
+    full.runs.assign_in_order("ABDDBA-")
+    session = full.desk.session
+    letters = {key: badge.letter for key, badge in full.desk.badges().items()}
+    assert [letters[run.setup] for run in session.runs[:6]] == ["A", "B", "D", "D", "B", "A"]
+    assert session.runs[6].excluded
+    assert len(session.setups) == 4
+    assert full.desk.document.undo_stack.undoText() == "Assign runs in order"
+    full.runs.assign_in_order("A" * 13)
+    assert "there are 12" in full.notice.accessibleName()
+    full.runs.assign_in_order("AXA")
+    assert full.desk.session is session

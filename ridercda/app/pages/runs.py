@@ -19,6 +19,7 @@ from ridercda.app.side.run_facts import wind_text
 from ridercda.app.strip.picture import axis_of
 from ridercda.app.theme import Type
 from ridercda.app.widgets.card import Card
+from ridercda.app.widgets.field import TextField
 from ridercda.app.widgets.links import link, link_line
 from ridercda.app.widgets.table import Column, TableModel, TableView
 from ridercda.drag.estimate import RunEstimate
@@ -73,7 +74,20 @@ class RunsPage(Page):
         self._remove = link(self.tr("Remove"))
         self._remove.clicked.connect(lambda: runs.remove(desk.selection.runs))
         self._buttons = (self._leave_out, self._count, self._merge, self._remove)
-        self._card.body.addLayout(link_line(self.theme, *self._buttons))
+        foot = link_line(self.theme, *self._buttons)
+        self._order_words = QLabel(self.tr("Ridden in the order"))
+        self._order_words.setProperty("quiet", True)
+        self._order = TextField(self.theme)
+        self._order.setPlaceholderText("A B C C B A")
+        self._order.setToolTip(
+            self.tr("Letters of the setups, run by run; – leaves a run out. New letters make setups.")
+        )
+        self._order.setAccessibleName(self._order_words.text())
+        self._order.setFixedWidth(px(170))
+        self._order.committed.connect(runs.assign_in_order)
+        foot.addWidget(self._order_words)
+        foot.addWidget(self._order)
+        self._card.body.addLayout(foot)
         self._overlay = LapOverlay(desk)
         layout = QVBoxLayout(self.content)
         layout.setContentsMargins(0, 0, 0, 0)
@@ -118,7 +132,7 @@ class RunsPage(Page):
                 raw=lambda row: row.figure.wind_speed if row.figure else None,
             ),
             Column(
-                self.tr("Left out because"),
+                self.tr("Left out"),
                 lambda row: row.run.excluded,
                 tip=lambda row: row.run.note or row.run.excluded,
             ),
@@ -165,15 +179,17 @@ class RunsPage(Page):
     def refresh(self) -> None:
         """Show runs and laps."""
         desk = self.desk
+        badges = desk.badges()
         for button in (*self._buttons, self._accept):
             button.setFont(self.theme.font())
+        self._order_words.setFont(self.theme.font())
+        self._order.set_value(" ".join(badges[run.setup].letter for run in desk.session.runs))
         self._offer_words.setFont(self.theme.font(Type.PAGE))
         proposed = desk.proposals.runs
         self._offer.setVisible(bool(proposed))
         self._offer_words.setText(self._offered(len(proposed)))
         rides = desk.shelf.rides()
         axis = axis_of(desk.session, rides)
-        badges = desk.badges()
         estimate = desk.solving.estimate
         figures = {run.id: run for run in estimate.runs} if estimate else {}
         rows = []

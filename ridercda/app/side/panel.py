@@ -6,6 +6,7 @@ from collections.abc import Callable
 from functools import partial
 
 from PySide6.QtCore import QSize, Qt, Signal
+from PySide6.QtGui import QPainter, QPaintEvent
 from PySide6.QtWidgets import (
     QButtonGroup,
     QFrame,
@@ -39,6 +40,7 @@ class SidePanel(QWidget):
     def __init__(self, desk: Desk, runs: RunEdits, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self._desk = desk
+        self._is_drawer = False
         px = desk.theme.px
         self._heading = QLabel(self.tr("Setups"))
         self._heading.setProperty("quiet", True)
@@ -116,10 +118,26 @@ class SidePanel(QWidget):
         return QSize(self._desk.theme.px(WIDTH), self._desk.theme.px(400))
 
     def _on_theme_changed(self) -> None:
-        self.setFixedWidth(self._desk.theme.px(WIDTH))
+        margin = self._desk.theme.px(16) if self._is_drawer else 0
+        self.setContentsMargins(0, 0, margin, 0)
+        self.setFixedWidth(self._desk.theme.px(WIDTH) + margin)
         self._heading.setFont(self._desk.theme.font(Type.AXIS, strong=True))
         for button in (*self._tabs.buttons(), *self.findChildren(QPushButton)):
             button.setFont(self._desk.theme.font())
+
+    def set_drawer(self, *, on: bool) -> None:
+        """Lie over the page with an edge of its own, or beside it."""
+        self._is_drawer = on
+        self._on_theme_changed()
+
+    def paintEvent(self, event: QPaintEvent) -> None:
+        """Draw the drawer's ground and edge."""
+        if self._is_drawer:
+            painter = QPainter(self)
+            painter.fillRect(self.rect(), self._desk.theme.colour("paper"))
+            edge = self.rect().right()
+            painter.fillRect(edge, 0, 1, self.height(), self._desk.theme.colour("axis"))
+            painter.end()
 
     def _on_selection_changed(self) -> None:
         run, setup = self._desk.selection.run, self._desk.selection.setup

@@ -13,7 +13,7 @@ from PySide6.QtCore import (
     Qt,
     Signal,
 )
-from PySide6.QtGui import QPainter
+from PySide6.QtGui import QPainter, QPaintEvent
 from PySide6.QtWidgets import (
     QAbstractItemView,
     QFrame,
@@ -250,6 +250,19 @@ class SetupList(QListView):
     def minimumSizeHint(self) -> QSize:
         """Ask for four rows."""
         return QSize(self._desk.theme.px(160), self._desk.theme.px(28 * 4))
+
+    def paintEvent(self, event: QPaintEvent) -> None:
+        """Draw the rows, or say how the first comes to be."""
+        super().paintEvent(event)
+        if not self._model.rowCount():
+            painter = QPainter(self.viewport())
+            theme = self._desk.theme
+            painter.setFont(theme.font(Type.AXIS))
+            painter.setPen(theme.colour("quiet"))
+            words = self.tr("None yet. The first run brings one; the letter keys make more.")
+            flags = Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignTop | Qt.TextFlag.TextWordWrap
+            painter.drawText(self.viewport().rect().adjusted(0, theme.px(4), 0, 0), int(flags), words)
+            painter.end()
 
     def _on_current_changed(self, current: QModelIndex) -> None:
         if not self._quiet and current.isValid():

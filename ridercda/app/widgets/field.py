@@ -133,7 +133,8 @@ class QuantityField(QWidget):
     def _say(self, trouble: str, *, wrong: bool) -> None:
         words = trouble
         if not words and self._value is None and self._assumed is not None and not self.line.text():
-            words = self.tr("assumed: {}").format(short_source(self._assumed.source))
+            source = short_source(self._assumed.source)
+            words = self.tr("assumed") if source == "definition" else self.tr("assumed: {}").format(source)
             self._words.setToolTip(self._assumed.source)
         else:
             self._words.setToolTip("")
