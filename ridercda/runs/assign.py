@@ -103,6 +103,17 @@ def assign_order(
     )
 
 
+def as_runs(
+    proposed: Sequence[ProposedRun], ride: str, setup: str = "", taken: Sequence[Run] = ()
+) -> tuple[Run, ...]:
+    """Return the document's runs for proposed runs that are all in one setup, or in none yet."""
+    ids = fresh_ids([run.id for run in taken], len(proposed))
+    return tuple(
+        Run(new_id, ride, setup, run.start, run.end, laps=run.laps)
+        for new_id, run in zip(ids, proposed, strict=True)
+    )
+
+
 def assign_laps(
     setup_of_lap: Mapping[int, str],
     laps: Sequence[float],

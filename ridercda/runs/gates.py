@@ -13,6 +13,7 @@ from ridercda.runs.placement import passing_times
 FloatArray = npt.NDArray[np.float64]
 
 LATE_PRESS = 15.0  # [s] a press this much off the gate still means the gate; common practice
+ROLLING_OUT = 2.0  # [s]
 SAME_PLACE = 60.0  # [m] presses within this of one another were meant for one gate
 
 
@@ -42,10 +43,15 @@ class Progress:
         return float(np.interp(time, self.time, self.coordinate))
 
     def passing(self, gate: float, lap: float) -> FloatArray:
-        """Return when the spell passes a gate, interpolated between records. [s]"""
+        """Return when the spell passes a gate, interpolated between records. [s]
+
+        A gate that lies two seconds or less beyond the end counts as passed at the end: recordings are stopped
+        there.
+        """
         gate *= self.sense
         first = np.ceil((self.coordinate[0] - gate) / lap - 1e-9)
-        last = np.floor((self.coordinate[-1] - gate) / lap + 1e-9)
+        beyond = min(ROLLING_OUT * float(self.speed[-1]), 0.05 * lap)
+        last = np.floor((self.coordinate[-1] + beyond - gate) / lap)
         goals = gate + lap * np.arange(first, last + 1)
         return passing_times(self.time, self.coordinate, goals)
 

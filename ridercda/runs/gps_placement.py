@@ -3,40 +3,37 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from types import MappingProxyType
 
 import numpy as np
 import numpy.typing as npt
 
-from ridercda.runs.gps_track import FIX_TIME, WANDER, Passage, follow, locate_run, smooth_offset
-from ridercda.runs.lap_length import comes_back, lap_from_fixes
+from ridercda.runs.gps_track import FIX_TIME
+from ridercda.runs.lap_length import lap_from_fixes
 from ridercda.runs.placement import Placed, Placement, Scale
 from ridercda.runs.reference_line import ReferenceLine, draw_line
+from ridercda.runs.settling import (
+    Lying,
+    find_runs,
+    first_sign,
+    fix_weights,
+    lapping_run,
+    leg_sign,
+    settle,
+    signed_path,
+    stations,
+)
 from ridercda.runs.traced import Group, RideTrace, TracedRun
 from ridercda.runs.turns import turn_zones
 from ridercda.watch import NO_WATCH, Watch
 
 FloatArray = npt.NDArray[np.float64]
 
-ROUNDS = 3  # of drawing the line and placing the runs on it
-STRAY = 25.0  # [m] mean distance from the line beyond which a run was ridden elsewhere
 GIVEN_LENGTH_ERROR = 1e-3  # relative standard error of a lap length as people measure it; common practice
 DRAWN_LENGTH_ERROR = 1e-3  # the same of a line drawn through fixes, besides their noise; common practice
 END_OF_ROAD = 40.0  # [m] over which the lanes of a U-turn part
-TURN_DOUBT = 2.0  # [m] how differently two U-turns at one end are ridden
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class _Lying:
-    """A run as placed so far."""
-
-    traced: TracedRun
-    path: FloatArray  # distance with the sign of the direction, from 0 at the first record, as recorded [m]
-    offset: FloatArray  # station less scaled path [m]
-    error: FloatArray  # [m]
-    noise: float  # of a fix along the line [m]
-    passage: Passage | None = None
+SAME_END = 15.0  # [m] within which U-turns are ridden at one end
 
 
 def place_loop_by_fixes(
@@ -72,18 +69,20 @@ def place_loop_by_fixes(
             )
     if lap is None:
         return None
-    guide, good = _lapping(runs, lap)
+    guide, good = lapping_run(runs, lap)
     path = guide.travelled - guide.travelled[0]
-    trust = _trust(guide.travelled)[good]
+    trust = fix_weights(guide.travelled)[good]
     line = draw_line(
         path[good], guide.east[good], guide.north[good], trust, start=0.0, length=lap, closed=True
     )
-    lying = _find(runs, line, notes)
-    line, lying, scales = _settle(line, lying, watch)
+    lying = find_runs(runs, line, notes)
+    if not lying:
+        return None
+    line, lying, scales = settle(line, lying, watch)
     zero = _gate_station(lying[0], scales)
     stretch, error, basis = _true_scale(
         line.length,
-        line.pace(_stations(lying, scales)) * line.length,
+        line.pace(stations(lying, scales)) * line.length,
         lap_length,
         _fix_error(lying, line),
         notes,
@@ -117,21 +116,23 @@ def place_road_by_fixes(
     """
     notes: list[str] = []
     guide = max(guides, key=lambda path: float(np.ptp(path.travelled)))
-    path = _signed_path(guide, guide.travelled)
+    path = signed_path(guide, guide.travelled)
     good = np.isfinite(guide.east)
     low, high = float(path[good].min()), float(path[good].max())
     if high - low < 50.0:
         return None
-    trust = _trust(guide.travelled)[good]
+    trust = fix_weights(guide.travelled)[good]
     line = draw_line(
         path[good], guide.east[good], guide.north[good], trust, start=low, length=high - low, closed=False
     )
-    lying = _find(runs, line, notes)
-    line, lying, scales = _settle(line, lying, watch)
+    lying = find_runs(runs, line, notes)
+    if not lying:
+        return None
+    line, lying, scales = settle(line, lying, watch)
     near, far = _ends(lying, scales, line)
     # At a U-turn the two lanes part and the line drawn between them is shorter than the way ridden.
     inset = min(END_OF_ROAD, 0.25 * (far - near))
-    seen = _stations(lying, scales)
+    seen = stations(lying, scales)
     seen = seen[(seen > near + inset) & (seen < far - inset)]
     drawn = line.pace(seen) * (far - near)
     turned_at_both = near > -np.inf and _turns_at_both_ends(lying, scales, near, far)
@@ -141,144 +142,7 @@ def place_road_by_fixes(
     return replace(placement, length=(far - near) * stretch, length_error=error * (far - near) * stretch)
 
 
-def _lapping(runs: Sequence[TracedRun], lap: float) -> tuple[TracedRun, npt.NDArray[np.bool_]]:
-    """Return the run that laps the longest, and its fixes that are on the loop."""
-    back = [comes_back(run.travelled, run.east, run.north, lap) for run in runs]
-    ridden = [float(seen.mean()) * run.length for run, seen in zip(runs, back, strict=True)]
-    most = int(np.argmax(ridden))
-    if ridden[most] < lap:  # no run is longer than a lap
-        most = int(np.argmax([run.length for run in runs]))
-        return runs[most], np.isfinite(runs[most].east)
-    return runs[most], back[most]
-
-
-def _trust(travelled: FloatArray) -> FloatArray:
-    """Return the weight of each fix: full at the usual pace, less when the rider creeps or stands."""
-    step = np.gradient(travelled)
-    usual = float(np.median(step))
-    return np.clip(step / usual, 0.0, 1.0) if usual > 0 else np.ones(travelled.size)
-
-
-def _signed_path(run: TracedRun | RideTrace, travelled: FloatArray) -> FloatArray:
-    """Return distance ridden with its sign reversed at each U-turn, 0 at the first record."""
-    inside = (run.turns > run.travelled[0]) & (run.turns < run.travelled[-1])
-    knots = np.concatenate((run.travelled[:1], run.turns[inside], run.travelled[-1:]))
-    legs = np.diff(knots) * (-1.0) ** np.arange(knots.size - 1)
-    return np.interp(travelled, knots, np.concatenate(([0.0], np.cumsum(legs))))
-
-
-def _leg_sign(run: TracedRun) -> FloatArray:
-    """Return +1 and -1 by the parity of the U-turns before each record."""
-    return np.asarray((-1.0) ** np.searchsorted(run.turns, run.travelled, side="left"))
-
-
-def _find(runs: Sequence[TracedRun], line: ReferenceLine, notes: list[str]) -> list[_Lying]:
-    lying = []
-    for run in runs:
-        path = _signed_path(run, run.travelled)
-        offset, direction, miss = locate_run(line, path, run.east, run.north, (1.0, -1.0))
-        if miss > STRAY:
-            notes.append(f"Run {run.run.id} was ridden elsewhere: its fixes miss the venue's line.")
-            continue
-        constant = np.full(path.size, offset)
-        lying.append(_Lying(run, direction * path, constant, np.full(path.size, 20.0), 3.0))
-    return lying
-
-
-def _settle(
-    line: ReferenceLine, lying: list[_Lying], watch: Watch
-) -> tuple[ReferenceLine, list[_Lying], dict[Group, tuple[float, float]]]:
-    """Place the runs and draw the line by turns; return also each group's scale and its relative error."""
-    scales = {run.traced.group: (1.0, 1e-2) for run in lying}
-    for turn in range(ROUNDS):
-        watch.step(turn, ROUNDS)
-        window = 60.0 if turn == 0 else 30.0
-        lying = [_placed_on(line, run, scales[run.traced.group][0], window) for run in lying]
-        scales = _rescaled(lying, scales)
-        lying = [_smoothed(run, scales[run.traced.group][0]) for run in lying]
-        if turn + 1 < ROUNDS:
-            line = _redrawn(line, lying, scales)
-    return line, lying, scales
-
-
-def _placed_on(line: ReferenceLine, run: _Lying, scale: float, window: float) -> _Lying:
-    dead = scale * run.path + run.offset
-    return replace(run, passage=follow(line, dead, run.traced.east, run.traced.north, window))
-
-
-def _smoothed(run: _Lying, scale: float) -> _Lying:
-    assert run.passage is not None
-    doubt = run.traced.doubt
-    if run.traced.turns.size:
-        doubt = doubt.copy()
-        at = np.searchsorted(run.traced.travelled, run.traced.turns)
-        doubt[np.minimum(at, doubt.size - 1)] += TURN_DOUBT
-    found = smooth_offset(
-        run.passage.station - scale * run.path, run.traced.time, run.traced.travelled, doubt
-    )
-    if found is None:
-        return run
-    return replace(run, offset=found.value, error=found.standard_error, noise=found.noise)
-
-
-def _rescaled(
-    lying: Sequence[_Lying], scales: dict[Group, tuple[float, float]]
-) -> dict[Group, tuple[float, float]]:
-    """Fit the scale of each group so that its runs keep pace with the line."""
-    sums: dict[Group, list[float]] = {group: [0.0, 0.0, 0.0, 0.0] for group in scales}
-    for run in lying:
-        assert run.passage is not None
-        known = np.isfinite(run.passage.station)
-        if known.sum() < 3:
-            continue
-        scale = scales[run.traced.group][0]
-        path = run.path[known]
-        left = run.passage.station[known] - scale * path
-        slack = left - run.offset[known]
-        weight = np.minimum(1.0, 2 * run.noise / np.maximum(np.abs(slack - np.median(slack)), 1e-9))
-        lever = path - np.average(path, weights=weight)
-        dt = float(np.median(np.diff(run.traced.time)))
-        total = sums[run.traced.group]
-        info = float((weight * lever**2).sum())
-        total[0] += float((weight * lever * left).sum())
-        total[1] += info
-        total[2] += info * run.noise**2 * max(2 * FIX_TIME / dt, 1.0)
-        total[3] += info**2 * 1.2 * WANDER / max(run.traced.length, 1.0)
-    result = {}
-    for group, (scale, _) in scales.items():
-        cross, info, fixes, wander = sums[group]
-        if info <= 0:
-            result[group] = (scale, 1e-2)
-            continue
-        step = float(np.clip(cross / info, -0.05, 0.05))
-        result[group] = (scale + step, float(np.sqrt(fixes + wander) / info))
-    return result
-
-
-def _redrawn(
-    line: ReferenceLine, lying: Sequence[_Lying], scales: dict[Group, tuple[float, float]]
-) -> ReferenceLine:
-    station, east, north, trust = [], [], [], []
-    for run in lying:
-        assert run.passage is not None
-        at = scales[run.traced.group][0] * run.path + run.offset
-        beyond = np.zeros(at.size, bool)
-        if not line.closed:
-            # Ridden past the ends drawn so far, and joined to a stretch that is known.
-            beyond = ((at < line.start) | (at > line.start + line.length)) & np.isfinite(run.traced.east)
-        use = np.isfinite(run.passage.station) | beyond
-        station.append(at[use])
-        east.append(run.traced.east[use])
-        north.append(run.traced.north[use])
-        trust.append(_trust(run.traced.travelled)[use])
-    s, x, y, w = (np.concatenate(part) for part in (station, east, north, trust))
-    if line.closed:
-        return draw_line(s, x, y, w, start=line.start, length=line.length, closed=True)
-    low, high = float(s.min()), float(s.max())
-    return draw_line(s, x, y, w, start=low, length=high - low, closed=False)
-
-
-def _fix_error(lying: Sequence[_Lying], line: ReferenceLine) -> float:
+def _fix_error(lying: Sequence[Lying], line: ReferenceLine) -> float:
     """Return the relative error that the fixes' own noise leaves in the length of the drawn line.
 
     Fixes of a minute count as one draw. Pushed outward by a metre, a closed line grows by 2 pi metres; an
@@ -312,25 +176,21 @@ def _true_scale(
     return (a * by_length + b * by_fixes) / (a + b), float((a + b) ** -0.5), "both"
 
 
-def _stations(lying: Sequence[_Lying], scales: dict[Group, tuple[float, float]]) -> FloatArray:
-    return np.concatenate([scales[run.traced.group][0] * run.path + run.offset for run in lying])
-
-
-def _gate_station(run: _Lying, scales: dict[Group, tuple[float, float]]) -> float:
+def _gate_station(run: Lying, scales: dict[Group, tuple[float, float]]) -> float:
     station = scales[run.traced.group][0] * run.path + run.offset
     at = run.traced.marks[0] if run.traced.marks else float(run.traced.time[0])
     return float(np.interp(at, run.traced.time, station))
 
 
 def _turn_stations(
-    lying: Sequence[_Lying], scales: dict[Group, tuple[float, float]]
+    lying: Sequence[Lying], scales: dict[Group, tuple[float, float]]
 ) -> tuple[FloatArray, FloatArray]:
     """Return the stations of all U-turns at the near end and at the far end."""
     near, far = [], []
     for run in lying:
         traced = run.traced
-        sign = _first_sign(run)
-        path = sign * _signed_path(traced, traced.turns)  # not from the records: they cut the turn short
+        sign = first_sign(run)
+        path = sign * signed_path(traced, traced.turns)  # not from the records: they cut the turn short
         at = scales[traced.group][0] * path + np.interp(traced.turns, traced.travelled, run.offset)
         outward = sign * (-1.0) ** np.arange(at.size)
         far.append(at[outward > 0])
@@ -339,25 +199,30 @@ def _turn_stations(
     return np.concatenate(near or empty), np.concatenate(far or empty)
 
 
-def _first_sign(run: _Lying) -> float:
-    """Return the direction in which a run first goes along the line."""
-    forward = _signed_path(run.traced, run.traced.travelled)
-    moved = int(np.argmax(np.abs(forward) > 0.5 * float(np.abs(forward).max())))
-    return float(np.sign(run.path[moved] * forward[moved])) or 1.0
-
-
 def _ends(
-    lying: Sequence[_Lying], scales: dict[Group, tuple[float, float]], line: ReferenceLine
+    lying: Sequence[Lying], scales: dict[Group, tuple[float, float]], line: ReferenceLine
 ) -> tuple[float, float]:
     near, far = _turn_stations(lying, scales)
     return (
-        float(np.median(near)) if near.size else line.start,
-        float(np.median(far)) if far.size else line.start + line.length,
+        _usual_end(near, -1.0) if near.size else line.start,
+        _usual_end(far, 1.0) if far.size else line.start + line.length,
     )
 
 
+def _usual_end(stations: FloatArray, outward: float) -> float:
+    """Return where most U-turns were ridden; of places with equally many the one farther out.
+
+    A rider may also turn on the way, to come back to a line.
+    """
+    near = np.abs(stations[:, None] - stations[None, :]) <= SAME_END
+    count = near.sum(axis=1)
+    most = np.flatnonzero(count == count.max())
+    best = most[int(np.argmax(outward * stations[most]))]
+    return float(np.median(stations[near[best]]))
+
+
 def _turns_at_both_ends(
-    lying: Sequence[_Lying], scales: dict[Group, tuple[float, float]], near: float, far: float
+    lying: Sequence[Lying], scales: dict[Group, tuple[float, float]], near: float, far: float
 ) -> bool:
     at_near, at_far = _turn_stations(lying, scales)
     return bool(at_near.size and at_far.size and far > near)
@@ -365,7 +230,7 @@ def _turns_at_both_ends(
 
 def _told(
     line: ReferenceLine,
-    lying: Sequence[_Lying],
+    lying: Sequence[Lying],
     scales: dict[Group, tuple[float, float]],
     truth: tuple[float, float, float, str],
     *,
@@ -379,8 +244,11 @@ def _told(
     for run in lying:
         traced = run.traced
         scale = scales[traced.group][0]
-        sign = _first_sign(run) * _leg_sign(traced)
-        spoilt = _away(run, reach) | turn_zones(traced.turns, traced.travelled, traced.speed, traced.power)
+        sign = first_sign(run) * leg_sign(traced)
+        lost = run.apart if run.apart is not None else False
+        spoilt = (
+            _away(run, reach) | lost | turn_zones(traced.turns, traced.travelled, traced.speed, traced.power)
+        )
         runs[traced.run.id] = Placed(
             station=(scale * run.path + run.offset - zero) * stretch,
             direction=sign,
@@ -411,7 +279,7 @@ def _told(
     )
 
 
-def _reach(lying: Sequence[_Lying]) -> float:
+def _reach(lying: Sequence[Lying]) -> float:
     """Return how far from the line a fix may lie and the rider still be on the venue. [m]"""
     off = [run.passage.off for run in lying if run.passage is not None]
     every = np.concatenate(off) if off else np.empty(0)
@@ -419,7 +287,7 @@ def _reach(lying: Sequence[_Lying]) -> float:
     return max(15.0, 6.0 * float(np.median(every))) if every.size else 15.0
 
 
-def _away(run: _Lying, reach: float) -> npt.NDArray[np.bool_]:
+def _away(run: Lying, reach: float) -> npt.NDArray[np.bool_]:
     """Return where fixes lie away from the line for 8 s or more; a spike is no detour."""
     assert run.passage is not None
     far = np.isfinite(run.traced.east) & ~(run.passage.off <= reach)

@@ -11,9 +11,12 @@ from numba import njit
 from ridercda.runs.reference_line import ReferenceLine
 
 FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
 
 GATE = 30.0  # [m] a fix farther from the line says nothing of the station
 WANDER = 1e-3  # [m^2/m] variance by which the ridden path and the line part per metre: 1 m a kilometre
+DISAGREEMENT = 15.0  # [m] a lasting gap between fixes and wheel beyond this is no wander
+LOST = 10.0  # [m] standard deviation of a step of the wheel while they disagree
 FIX_TIME = 30.0  # [s] over which the errors of fixes stay alike; common practice
 FIX_NOISE = (0.5, 15.0)  # [m] least and greatest standard deviation of a fix along the line
 
@@ -146,11 +149,14 @@ class Offset:
         Of the value, given that the noise of the fixes has been judged right. [m]
     noise : float
         Standard deviation of a single fix along the line. [m]
+    apart : ndarray of bool, shape (n,)
+        Where fixes and wheel contradicted each other and the fixes were followed.
     """
 
     value: FloatArray
     standard_error: FloatArray
     noise: float
+    apart: BoolArray
 
 
 def smooth_offset(
@@ -179,7 +185,8 @@ def smooth_offset(
     directions (H. E. Rauch, F. Tung and C. T. Striebel, Maximum likelihood estimates of linear dynamic
     systems, AIAA J. 3(8), 1445-1450, 1965, doi:10.2514/3.3166). The fixes' correlated error is counted as a
     white one of the same mean over a minute and more, and wild fixes weigh less (Huber). Three rounds set the
-    noise from what the fixes leave.
+    noise from what the fixes leave. Where fixes stay away from that, the wheel has lost the way (a U-turn not
+    seen, a sensor that fell silent) and the fixes are followed.
     """
     if not np.isfinite(offset).any():
         return None
@@ -187,7 +194,28 @@ def smooth_offset(
     walk = WANDER * np.diff(travelled, prepend=travelled[:1]) + doubt**2
     inflate = np.maximum(2 * FIX_TIME / np.clip(dt, 0.1, 2 * FIX_TIME), 1.0)
     value, variance, noise = _smooth_robustly(offset, inflate, walk, *FIX_NOISE)
-    return Offset(value, np.sqrt(variance), noise)
+    apart = _disagreeing(offset - value, max(DISAGREEMENT, 5 * noise))
+    if apart.any():
+        value, variance, noise = _smooth_robustly(offset, inflate, walk + apart * LOST**2, *FIX_NOISE)
+    return Offset(value, np.sqrt(variance), noise, apart)
+
+
+@njit(cache=True, nogil=True)
+def _disagreeing(left: FloatArray, reach: float) -> BoolArray:
+    """Return the records between which most of eleven fixes on end lie beyond reach on one side."""
+    apart = np.zeros(left.size, np.bool_)
+    known = np.flatnonzero(np.isfinite(left))
+    for i in range(known.size - 10):
+        above = 0
+        below = 0
+        for k in range(i, i + 11):
+            if left[known[k]] > reach:
+                above += 1
+            elif left[known[k]] < -reach:
+                below += 1
+        if above >= 8 or below >= 8:
+            apart[known[i] : known[i + 10] + 1] = True
+    return apart
 
 
 @njit(cache=True, nogil=True)
@@ -251,13 +279,13 @@ def locate_run(
 
     Returns
     -------
-    offset, direction, miss : float
-        So that ``direction * dead + offset`` is the station; `miss` is the mean distance from the line, where
-        every fix counts at most 60 m. [m, 1, m]
+    offset, direction, near : float
+        So that ``direction * dead + offset`` is the station; `near` is the share of fixes that then lie within
+        25 m of their station. [m, 1, 1]
     """
     good = np.flatnonzero(np.isfinite(east) & np.isfinite(north))
     if good.size == 0:
-        return 0.0, directions[0], np.inf
+        return 0.0, directions[0], 0.0
     pick = good[np.linspace(0, good.size - 1, min(good.size, 80)).astype(int)]
     s, x, y = dead[pick], east[pick], north[pick]
     best = (0.0, directions[0], np.inf)
@@ -269,7 +297,7 @@ def locate_run(
             low, high = line.start - float(reach.max()), line.start + line.length - float(reach.min())
         grid = np.arange(low, high, 20.0)
         for width in (20.0, 2.0):
-            miss = _misses(
+            miss, _ = _misses(
                 line.east, line.north, line.start, line.step, line.closed, direction * s, x, y, grid
             )
             at = int(np.argmin(miss))
@@ -277,7 +305,11 @@ def locate_run(
                 grid = grid[at] + np.arange(-24.0, 25.0, 2.0)
         if miss[at] < best[2]:
             best = (float(grid[at]), direction, float(miss[at]))
-    return best
+    offset, direction, _ = best
+    _, near = _misses(
+        line.east, line.north, line.start, line.step, line.closed, direction * s, x, y, np.array([offset])
+    )
+    return offset, direction, float(near[0])
 
 
 @njit(cache=True, nogil=True)
@@ -291,10 +323,12 @@ def _misses(
     x: FloatArray,
     y: FloatArray,
     grid: FloatArray,
-) -> FloatArray:
+) -> tuple[FloatArray, FloatArray]:
+    """Return the mean distance, each fix counting 60 m at most, and the share of near fixes, by offset."""
     cap = 60.0
     m = lx.size
     out = np.empty(grid.size)
+    near = np.zeros(grid.size)
     for g in range(grid.size):
         total = 0.0
         for k in range(s.size):
@@ -306,5 +340,7 @@ def _misses(
                 continue
             d = np.sqrt((lx[i] - x[k]) ** 2 + (ly[i] - y[k]) ** 2)
             total += min(d, cap)
+            if d < 25.0:
+                near[g] += 1.0 / s.size
         out[g] = total / s.size
-    return out
+    return out, near

@@ -37,6 +37,12 @@ class Placed:
     standard_error: FloatArray
     off_venue: BoolArray
 
+    def part(self, inner: slice) -> Placed:
+        """Return some records of the run."""
+        return Placed(
+            self.station[inner], self.direction[inner], self.standard_error[inner], self.off_venue[inner]
+        )
+
 
 @dataclass(frozen=True, slots=True)
 class Scale:

@@ -15,7 +15,7 @@ from ridercda.runs.fixes import plane_of
 from ridercda.runs.gates import LATE_PRESS, Gate, Progress, fastest_gate, gate_of_presses
 from ridercda.runs.lap_groups import Lap, groups_of_laps, lap_time_groups, spans_of_marks
 from ridercda.runs.marks import Marks, clock, sorted_marks
-from ridercda.runs.placement import Placement, lap_coordinate
+from ridercda.runs.placement import Placed, Placement, lap_coordinate
 from ridercda.runs.placing import TYPICAL_BIKE, TYPICAL_RIDER, place_runs
 from ridercda.runs.proposal import Proposal, ProposedRun
 from ridercda.runs.spells import SHORTEST, riding_spells
@@ -27,9 +27,12 @@ from ridercda.session.document import Run, Venue, VenueKind
 from ridercda.watch import NO_WATCH, Watch
 
 FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
 
 SETTLE = default("run.settle_time")  # [s]
 STEADY = 0.8  # of a run's level just before its start: the rider had settled already
+DETOUR = 250.0  # [m] off the venue that ends a run
+END_OF_ROAD = 60.0  # [m] from the usual turn within which a U-turn is one of a lap
 WORTH = 60.0  # [s] a run without whole laps is at least this long
 
 
@@ -152,9 +155,7 @@ def _by_spells(trace: RideTrace, venue: Venue, marks: Marks, settle: float, watc
         return _by_marks_alone(traced, marks, settle, "steady riding between stops", 0.5)
     span = trace.part(slice(spells[0].start, spells[-1].stop))
     placement = place_runs(venue, traced, [span], TYPICAL_RIDER + TYPICAL_BIKE, watch)
-    progress = {
-        run.run.id: _progress(venue.kind, run, placement) for run in traced if run.run.id in placement.runs
-    }
+    traced, progress = _on_the_venue(venue.kind, traced, placement)
     if not progress:
         return _by_marks_alone(traced, marks, settle, "between lap marks; no lap was found", 0.3)
     lap = placement.length * (2.0 if venue.kind is VenueKind.OUT_AND_BACK else 1.0)
@@ -163,18 +164,57 @@ def _by_spells(trace: RideTrace, venue: Venue, marks: Marks, settle: float, watc
     if gate is None:
         gate = fastest_gate(list(progress.values()), lap, settle)
     runs: list[ProposedRun] = []
+    fixed = placement.line is not None
     for run in traced:
         if run.run.id in progress:
-            runs += _in_spell(run, progress[run.run.id], gate, lap, settle, placement.line is not None, notes)
+            # The button may be pressed for a spell's last pass when the rider stands already.
+            presses = [t for t in marks.times if run.time[0] - 0.5 <= t <= run.time[-1] + LATE_PRESS]
+            runs += _in_spell(run, progress[run.run.id], gate, lap, settle, fixed, presses, notes)
     return Proposal(tuple(runs), tuple(notes))
 
 
-def _progress(kind: VenueKind, run: TracedRun, placement: Placement) -> Progress:
-    placed = placement.runs[run.run.id]
-    coordinate, _ = lap_coordinate(kind, placed, placement.length)
-    round_and_round = kind in (VenueKind.LOOP, VenueKind.TRACK)
-    sense = float(placed.direction[0]) if round_and_round else 1.0
-    return Progress(run.time, coordinate, run.speed, sense)
+def _on_the_venue(
+    kind: VenueKind, traced: Sequence[TracedRun], placement: Placement
+) -> tuple[list[TracedRun], dict[str, Progress]]:
+    """Return the stretches of the spells that lie on the venue, and how they go on along it."""
+    stretches, progress = [], {}
+    for run in traced:
+        if run.run.id not in placement.runs:
+            continue
+        placed = placement.runs[run.run.id]
+        round_and_round = kind in (VenueKind.LOOP, VenueKind.TRACK)
+        sense = float(placed.direction[0]) if round_and_round else 1.0
+        parts = _without_detours(run, placed.off_venue)
+        if kind is VenueKind.OUT_AND_BACK:
+            parts = [piece for part in parts for piece in _between_odd_turns(part, placed, placement.length)]
+        for number, part in enumerate(parts):
+            piece = run.part(part, f"{run.run.id}.{number}")
+            stretches.append(piece)
+            coordinate, _ = lap_coordinate(kind, placed.part(part), placement.length)
+            progress[piece.run.id] = Progress(piece.time, coordinate, piece.speed, sense)
+    return stretches, progress
+
+
+def _without_detours(run: TracedRun, off: BoolArray) -> list[slice]:
+    """Return what lies between long detours from the venue; a U-turn is none."""
+    edges = np.flatnonzero(np.diff(np.concatenate(([False], off, [False])).astype(np.int8)))
+    detours = [
+        (int(first), int(last))
+        for first, last in zip(edges[::2], edges[1::2], strict=True)
+        if run.travelled[last - 1] - run.travelled[first] > DETOUR
+    ]
+    starts = [0, *(last for _, last in detours)]
+    stops = [*(first for first, _ in detours), run.time.size]
+    return [slice(a, b) for a, b in zip(starts, stops, strict=True) if b - a > 1]
+
+
+def _between_odd_turns(part: slice, placed: Placed, length: float) -> list[slice]:
+    """Cut a stretch where the rider turned away from the ends of the road, as one does to come back to a line."""
+    station, direction = placed.station[part], placed.direction[part]
+    turned = 1 + np.flatnonzero(np.diff(direction) != 0)
+    odd = [int(k) for k in turned if min(abs(station[k]), abs(station[k] - length)) > END_OF_ROAD]
+    cuts = [part.start, *(part.start + k for k in odd), part.stop]
+    return [slice(a, b) for a, b in pairwise(cuts) if b - a > 1]
 
 
 def _in_spell(
@@ -184,13 +224,14 @@ def _in_spell(
     lap: float,
     settle: float,
     fixed: bool,
+    presses: Sequence[float],
     notes: list[str],
 ) -> list[ProposedRun]:
     """Return the runs of one spell whose way round the venue is known."""
     passing = progress.passing(gate.place, lap)
     if passing.size < 2:
         return []
-    pressed = _snapped(run.marks, passing, gate, notes) if gate.basis == "lap button" else set()
+    pressed = _snapped(presses, passing, gate, notes) if gate.basis == "lap button" else set()
     laps = [Lap(float(a), float(b), _level(run, float(a), float(b))) for a, b in pairwise(passing)]
     groups = groups_of_laps(laps, pressed, notes)
     found = []

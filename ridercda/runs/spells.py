@@ -93,7 +93,9 @@ def _easy(trace: RideTrace) -> BoolArray:
     hard = float(np.percentile(power[moving], 75))
     usual = float(np.median(trace.speed[moving]))
     slow = running_mean(trace.time, trace.speed, 10.0) < EASY_SPEED * usual
-    return _lasting((power < EASY_POWER * hard) & slow, trace.time, EASY)
+    easy = _lasting((power < EASY_POWER * hard) & slow, trace.time, EASY)
+    # The means see a change coming half a window early, and behind it as long.
+    return np.asarray(running_mean(trace.time, easy.astype(float), 10.0) > 1.0 - 1e-9)
 
 
 def running_mean(time: FloatArray, values: FloatArray, window: float) -> FloatArray:

@@ -77,6 +77,19 @@ class TracedRun:
     earlier_turns: FloatArray  # in the ride before the run [m]
     marks: tuple[float, ...]  # laps given for the run, else pressed by hand inside it [s]
 
+    def part(self, inner: slice, name: str) -> TracedRun:
+        """Return some records of the run as a run of another name."""
+        first = self.points.start
+        time = self.time[inner]
+        arrays = ("time", "travelled", "doubt", "east", "north", "speed", "power", "altitude")
+        return replace(
+            self,
+            run=replace(self.run, id=name, start=float(time[0]), end=float(time[-1])),
+            points=slice(first + inner.start, first + inner.stop),
+            marks=tuple(mark for mark in self.marks if time[0] - 0.5 <= mark <= time[-1] + 0.5),
+            **{array: getattr(self, array)[inner] for array in arrays},
+        )
+
     @property
     def length(self) -> float:
         """Distance ridden in the run. [m]"""
