@@ -42,9 +42,9 @@ def groups_of_laps(laps: Sequence[Lap], pressed: set[float], notes: list[str]) -
 
     Notes
     -----
-    Presses at most passes of the gate are laps of a run; passes without one between them break it unless the effort
-    goes on. Presses at few passes each begin another run. Without presses a run is what is ridden at one effort.
-    Easy laps between efforts are left out.
+    Presses at most passes of the gate are laps of a run; passes without one between them break it unless the
+    effort goes on; a last lap that only a stop ends belongs to it too. Presses at few passes each begin another
+    run. Without presses a run is what is ridden at one effort. Easy laps between efforts are left out.
     """
     if not pressed:
         return _without_recovery(_by_effort(laps))
@@ -66,7 +66,7 @@ def groups_of_laps(laps: Sequence[Lap], pressed: set[float], notes: list[str]) -
             groups[-1] += span
             continue
         around = _mean(groups[-1]) if groups[-1] else _mean(laps[b : b + 1] or span)
-        if around > 0 and all(abs(lap.level / around - 1) <= 1.5 * ALIKE for lap in span):
+        if _all_alike(span, around):
             notes.append(
                 f"A press of the lap button is missing between {clock(span[0].start)} and "
                 f"{clock(span[-1].end)}; the laps were told by the gate."
@@ -74,7 +74,18 @@ def groups_of_laps(laps: Sequence[Lap], pressed: set[float], notes: list[str]) -
             groups[-1] += span
         else:
             groups.append([])
+    last = laps[on[-1] :]
+    if len(last) == 1 and groups[-1] and _all_alike(last, _mean(groups[-1])):
+        notes.append(
+            f"No press of the lap button ends the lap at {clock(last[0].end)}, after which the rider stopped; it "
+            "was counted."
+        )
+        groups[-1] += last
     return [group for group in groups if group]
+
+
+def _all_alike(laps: Sequence[Lap], level: float) -> bool:
+    return level > 0 and all(abs(lap.level / level - 1) <= 1.5 * ALIKE for lap in laps)
 
 
 def _mean(laps: Sequence[Lap]) -> float:

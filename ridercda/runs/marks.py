@@ -60,8 +60,13 @@ def sorted_marks(ride: Ride, travelled: FloatArray, lap_length: float | None) ->
             notes.append(f"{count} laps closed by {trigger.value} were passed over: the head unit made them.")
     first, last = float(ride.time[0]), float(ride.time[-1])
     ends = {lap.end for lap in own}
-    # The start of a lap is a mark only where an own lap before it ended elsewhere.
-    starts = {lap.start for lap in own if lap.start > first + DOUBLE_PRESS} - ends
+    # The start of a lap is a mark only where no lap ended about then: files round the two differently.
+    closed = np.array([lap.end for lap in ride.laps])
+    starts = {
+        lap.start
+        for lap in own
+        if lap.start > first + DOUBLE_PRESS and np.abs(closed - lap.start).min() > DOUBLE_PRESS
+    }
     by_itself = {lap.end for lap in ride.laps if lap.trigger in _BY_ITSELF}
     times = np.array(sorted((ends | starts) - by_itself))
     times = times[(times > first + 1.0) & (times < last - 1.0)]

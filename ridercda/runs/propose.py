@@ -109,7 +109,8 @@ def _why_none(ride: Ride, venue: Venue, taken: Sequence[Run]) -> str:
         return f"No spell of steady riding of {WORTH:.0f} s or more was found."
     if not (ride.has("latitude", "longitude") or ride.has("distance") or ride.has("speed")):
         return "The ride has neither position, distance, speed nor lap marks that tell laps."
-    return f"No whole lap of a {venue.kind.value} was found between stops; cut the runs by hand."
+    place = "an out-and-back road" if venue.kind is VenueKind.OUT_AND_BACK else f"a {venue.kind.value}"
+    return f"No whole lap of {place} was found between stops; cut the runs by hand."
 
 
 def _by_lap_times(trace: RideTrace, venue: Venue, marks: Marks, settle: float) -> Proposal:

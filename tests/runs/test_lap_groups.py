@@ -36,6 +36,18 @@ def test_a_missing_press_is_bridged_and_told() -> None:
     assert "missing between 0:03:20 and 0:10:00" in notes[0]
 
 
+def test_a_last_lap_that_only_a_stop_ends_is_counted_and_told() -> None:
+    notes: list[str] = []
+    groups = groups_of_laps(_laps([200, 205, 196]), {0.0, 200.0, 400.0}, notes)
+    assert _shape(groups) == [[200, 205, 196]]
+    assert "No press of the lap button ends the lap at 0:10:00" in notes[0]
+
+
+def test_an_easy_last_lap_is_not() -> None:
+    groups = groups_of_laps(_laps([200, 205, 120]), {0.0, 200.0, 400.0}, [])
+    assert _shape(groups) == [[200, 205]]
+
+
 def test_laps_without_presses_between_runs_are_no_run() -> None:
     pressed = {0.0, 200.0, 400.0, 1000.0, 1200.0, 1400.0}
     groups = groups_of_laps(_laps([200, 205, 110, 90, 150, 300, 310]), pressed, [])

@@ -1,6 +1,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -44,6 +45,14 @@ def test_presses_among_distance_laps_are_kept() -> None:
         LapMark(140.0, 240.0, LapTrigger.DISTANCE),
     )
     assert sorted_marks(_ride(laps), TRAVELLED, None).times == (140.0,)
+
+
+def test_the_start_of_a_lap_rounded_otherwise_than_the_end_before_is_no_second_press() -> None:
+    starts = (0.0, 300.0, 650.0, 900.0, 1230.0)
+    laps = tuple(LapMark(a, b - 0.8, LapTrigger.MANUAL) for a, b in pairwise(starts))
+    found = sorted_marks(_ride(laps), TRAVELLED, None)
+    assert found.times == (299.2, 649.2, 899.2, 1229.2)
+    assert not found.notes
 
 
 def test_a_double_press_counts_once(lap_marks: Callable) -> None:
