@@ -158,6 +158,7 @@ class MainWindow(QMainWindow):
         """Show a page."""
         self._stack.setCurrentWidget(self.workbench)
         self.workbench.show_page(page)
+        self.workbench.pages[page].focus_first()
 
     def focus_strip(self) -> None:
         """Put the keyboard into the day strip."""

@@ -103,6 +103,7 @@ class Workbench(QWidget):
         place = next(k for k, spec in enumerate(PAGES) if spec.id == page_id)
         if page_id not in self.pages:
             self._build_page(place)
+        self.pages[page_id].catch_up()
         self._stack.setCurrentIndex(place)
         self._names.button(place).setChecked(True)
         for button in self._names.buttons():

@@ -9,6 +9,7 @@ import pytest
 from PySide6.QtCore import QMimeData, QPointF, Qt, QUrl
 from PySide6.QtGui import QDropEvent
 from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QApplication
 from pytestqt.qtbot import QtBot
 
 from ridercda.app.desk import build_desk
@@ -158,3 +159,47 @@ def test_a_file_that_is_no_ride_is_told_in_one_sentence(
     assert item is not None
     assert "notes.txt" in item.message
     assert "Traceback" not in item.message
+
+
+def test_the_same_by_keyboard_alone(window: MainWindow, qtbot: QtBot, tmp_path: Path) -> None:
+    """Every step as it is written down for people; the file dialog itself is the system's."""
+    root = samples_root()
+    assert root is not None
+    desk = window.desk
+    control, shift = Qt.KeyboardModifier.ControlModifier, Qt.KeyboardModifier.ShiftModifier
+
+    def press(key: Qt.Key, modifiers: Qt.KeyboardModifier = NONE) -> None:
+        target = QApplication.focusWidget() or window
+        QTest.keyClick(target, key, modifiers)
+
+    def write(text: str) -> None:
+        target = QApplication.focusWidget()
+        assert target is not None
+        QTest.keyClicks(target, text)
+
+    window.activateWindow()
+    qtbot.waitUntil(window.isActiveWindow, timeout=5_000)
+    window.files.add_rides([root / "quarry-loop" / "rides" / "morning.fit"])  # Ctrl+Shift+O, the name, Enter
+    qtbot.waitUntil(lambda: desk.shelf.ride("morning") is not None, timeout=PATIENCE)
+    press(Qt.Key.Key_1, control)
+    write("165 lb")
+    press(Qt.Key.Key_Tab)
+    write("8,5 kg")
+    press(Qt.Key.Key_Return)
+    assert desk.session.rider.mass == pytest.approx(74.84274105)
+    assert desk.session.bike.mass == 8.5
+    qtbot.waitUntil(lambda: len(desk.proposals.runs) >= 12, timeout=PATIENCE)
+    press(Qt.Key.Key_A, control | shift)
+    assert len(desk.session.runs) >= 12
+    press(Qt.Key.Key_F6)
+    assert QApplication.focusWidget() is window.strip.list
+    for letter in ORDER:
+        press(Qt.Key.Key_Right)
+        write(letter)
+    assert len(desk.session.setups) == 3
+    press(Qt.Key.Key_3, control)
+    assert window.workbench.page == "drag"
+    qtbot.waitUntil(lambda: current(window), timeout=PATIENCE)
+    assert len(figures(window)) == 3
+    press(Qt.Key.Key_Z, control)
+    assert desk.document.undo_stack.canRedo()

@@ -82,7 +82,10 @@ def test_a_real_window_is_driven_by_mouse(tmp_path: Path) -> None:
         env=environment,
         timeout=240,
     )
-    if "could not connect to display" in told.stderr or "no Qt platform plugin could be initialized" in told.stderr:
+    if (
+        "could not connect to display" in told.stderr
+        or "no Qt platform plugin could be initialized" in told.stderr
+    ):
         pytest.skip("the display libraries for a real window are not installed")
     assert told.returncode == 0, told.stderr[-2000:]
     assert "driven" in told.stdout

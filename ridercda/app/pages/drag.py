@@ -110,6 +110,9 @@ class DragPage(Page):
         """Show diagnostics instead of the evidence, or go back."""
         self._switch.setChecked(on)
 
+    def _first(self) -> QWidget:
+        return self._intervals
+
     def blank(self) -> Blank | None:
         """Say what is missing for a figure."""
         solving, session = self.desk.solving, self.desk.session

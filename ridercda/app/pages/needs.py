@@ -62,6 +62,12 @@ class NeedsCard(Card):
         self._venue.activated.connect(self._on_venue_activated)
         self._lap.committed.connect(self._on_lap_committed)
 
+    @property
+    def first(self) -> QWidget:
+        """The first field that is still empty."""
+        fields = (self._rider, self._bike)
+        return next((field for field in fields if field.value is None), self._venue)
+
     def _edit(self, words: str, change: Callable[[Session], Session]) -> None:
         if not self._desk.document.edit(words, change):
             self.refresh()

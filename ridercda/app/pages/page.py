@@ -74,6 +74,21 @@ class Page(QWidget):
         if self._dirty and self.isVisible():
             self.refresh_now()
 
+    def catch_up(self) -> None:
+        """Show what was missed while the page was not seen."""
+        if self._dirty:
+            self.refresh_now()
+
+    def focus_first(self) -> None:
+        """Put the keyboard where the work of this page begins."""
+        if self._stack.currentWidget() is self._empty:
+            self._empty.focus_button()
+        else:
+            self._first().setFocus()
+
+    def _first(self) -> QWidget:
+        return self.content
+
     def refresh_now(self) -> None:
         """Show what holds, at once."""
         self._dirty = False
@@ -132,6 +147,10 @@ class EmptyPage(QWidget):
         self._title.setFont(self._theme.font(Type.SENTENCE, strong=True))
         self._words.setFont(self._theme.font())
         self._button.setFont(self._theme.font(strong=True))
+
+    def focus_button(self) -> None:
+        """Put the keyboard on the button."""
+        self._button.setFocus()
 
     def show_blank(self, blank: Blank) -> None:
         """Say something else."""

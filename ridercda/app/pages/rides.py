@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
-from PySide6.QtWidgets import QFileDialog, QHBoxLayout, QLabel, QVBoxLayout
+from PySide6.QtWidgets import QFileDialog, QHBoxLayout, QLabel, QVBoxLayout, QWidget
 
 from ridercda.app.desk import Desk
 from ridercda.app.figures import clock, duration
@@ -101,6 +101,9 @@ class RidesPage(Page):
             Column(self.tr("File"), lambda r: Path(r.file).name, tip=lambda r: r.file),
             Column(self.tr("Channels"), lambda r: r.channels, tip=lambda r: r.channels),
         )
+
+    def _first(self) -> QWidget:
+        return self._table if self._needs.isHidden() else self._needs.first
 
     def blank(self) -> Blank | None:
         """Say how to begin."""

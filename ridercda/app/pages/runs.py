@@ -146,6 +146,9 @@ class RunsPage(Page):
 
         return Column(f"{title} [{units.symbol(kind)}]", lambda row: units.number(raw(row), kind), raw=raw)
 
+    def _first(self) -> QWidget:
+        return self._accept if self.desk.proposals.runs else self._table
+
     def blank(self) -> Blank | None:
         """Say how runs come to be."""
         if self.desk.session.runs or self.desk.proposals.runs:
