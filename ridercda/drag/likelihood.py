@@ -63,6 +63,11 @@ class Model:
     noise_mean: FloatArray  # logarithms (NOISES,)
     noise_sd: FloatArray  # logarithms; 0 = not in play
 
+    @property
+    def day_has_air_speed(self) -> bool:
+        """Whether any run has an air-speed sensor."""
+        return any(table.rows > table.table.shape[0] for table in self.tables)
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Pass:
@@ -156,9 +161,10 @@ def model_of(day: Day) -> Model:
     known = (priors.GUST_SD, priors.GUST_TIME, priors.POWER_NOISE, priors.SPEED_NOISE, priors.AIR_SPEED_NOISE)
     noise_mean = np.log([median for median, _ in known])
     noise_sd = np.array([spread for _, spread in known])
-    if not any(t.rows > t.table.shape[0] for t in tables):
+    model = Model(day, nodes, layout, tuple(tables), noise_mean, noise_sd)
+    if not model.day_has_air_speed:
         noise_sd[at.AIR_SPEED_NOISE] = 0.0
-    return Model(day, nodes, layout, tuple(tables), noise_mean, noise_sd)
+    return model
 
 
 def filter_pass(model: Model, parameters: FloatArray, log_noise: FloatArray) -> Pass:
@@ -260,7 +266,7 @@ def fit(model: Model, watch: Watch = NO_WATCH) -> Fit:
     NotConverged
         If the unknowns or the noise do not settle.
     """
-    least, most = np.log(priors.NOISE_LEAST), np.log(priors.NOISE_MOST)
+    least, most = _noise_bounds(model)
     in_play = np.flatnonzero(model.noise_sd > 0)
     with ThreadPoolExecutor(2) as pool:
         here = settle(

@@ -24,7 +24,7 @@ POWER_LAG_SD: Final = 0.5  # [s] left after whole records are shifted
 TYRE_WARM_UP_SD: Final = 0.05  # relative, of Crr on the first metres
 TYRE_WARM_UP_TIME: Final = 480.0  # [s]
 AIR_SPEED_FACTOR_SD: Final = 0.05
-CLOSED_SPEED_FACTOR_SD: Final = 0.001  # laps of known length or under GPS
+AIR_SPEED_FACTOR_BY_SETUP_SD: Final = 0.003  # a position changes the flow the probe sees
 
 WIND_UNKNOWN_SD: Final = 4.0  # [m/s] each component, without a report
 WIND_REPORT_SD: Final = 0.7  # [m/s] each component, 1.2 m up, of a report without its own
@@ -54,7 +54,7 @@ AIR_SPEED_NOISE: Final = (0.3, 0.8)  # [m/s]
 
 # Bounds of the noise, in the order gust sd, gust time, power, speed, air speed. Below them no instrument works, and
 # what the model leaves out (a profile between its knots, positions half a metre off) would pass for information.
-NOISE_LEAST: Final = (0.02, 2.0, 0.008, 0.004, 0.02)
+NOISE_LEAST: Final = (0.02, 4.0, 0.015, 0.012, 0.05)
 NOISE_START: Final = (
     0.15,
     8.0,

@@ -14,7 +14,7 @@ from ridercda.drag.repeats import Pooled, residuals
 from ridercda.session.document import VenueKind
 
 ODD_RUN = 2.8  # standard errors from its repeats: one run in two hundred
-DRIFT_MATTERS = 0.25  # of a difference's variance
+DRIFT_MATTERS = 0.15  # of a difference's standard error
 WARMER = 2.0  # [K] between the means of two setups
 CDA_BAND = (0.15, 0.70)  # [m^2] track specialist to upright (from memory)
 CRR_BAND = (0.0010, 0.0120)  # smooth track to rough road (from memory)
@@ -42,16 +42,16 @@ def remarks(
             )
         )
     for difference in differences:
-        share = difference.variance_shares.get("drift", 0.0)
-        if difference.cda is not None and share > DRIFT_MATTERS:
-            gap = _hours_apart(fit, pooled, difference)
-            moved = abs(gap) * priors.CDA_DRIFT_SD * abs(pooled.mixed.coefficients[0])
+        gap = _hours_apart(fit, difference)
+        moved = abs(gap) * priors.CDA_DRIFT_SD * abs(pooled.mixed.coefficients[0])
+        if difference.cda is not None and moved > DRIFT_MATTERS * difference.cda.standard_error:
             found.append(
                 SolveWarning(
                     "order-confounded",
                     f"{difference.setup} and {difference.against} were ridden {abs(gap) * 60:.0f} min apart on "
-                    f"average, so a drift through the day looks like a difference: an ordinary one of 0.4 % an hour "
-                    f"makes {moved:.4f} m². It is in the interval; alternating the setups removes it.",
+                    f"average, so a drift through the day looks like a difference: an ordinary one of "
+                    f"{100 * priors.CDA_DRIFT_SD:.1f} % an hour makes {moved:.4f} m². It is in the interval; "
+                    "alternating the setups removes it.",
                 )
             )
             break
@@ -87,7 +87,7 @@ def remarks(
     return found
 
 
-def _hours_apart(fit: Fit, pooled: Pooled, difference: Difference) -> float:
+def _hours_apart(fit: Fit, difference: Difference) -> float:
     day = fit.model.day
     hours = {
         name: np.mean([run.hour for run in day.runs if day.setups[run.setup] == name])

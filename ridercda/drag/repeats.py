@@ -122,6 +122,10 @@ def pool(fit: Fit, figures: RunFigures) -> Pooled:
     drift[:runs, :runs] = (priors.CDA_DRIFT_SD * size) ** 2 * np.outer(hour, hour)
     offset = np.zeros((n, n))
     offset[:runs, :runs] = (priors.COAST_DOWN_OFFSET_SD * size) ** 2 * np.outer(coasting, coasting)
+    if fit.model.day_has_air_speed:  # drag goes with the square of what the probe reads
+        setup = np.array([run.setup for run in day.runs])
+        same = setup[:, None] == setup[None, :]
+        offset[:runs, :runs] += (2.0 * priors.AIR_SPEED_FACTOR_BY_SETUP_SD * size) ** 2 * same
     median, spread = priors.BETWEEN_RUN
     mixed = fit_mixed(
         figures.values,
