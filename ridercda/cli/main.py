@@ -14,7 +14,6 @@ USAGE = """\
 usage: ridercda [SESSION]                                 open the window
        ridercda inspect RIDE...                           channels, sampling, span and faults of ride files
        ridercda solve SESSION [--json FILE]               CdA per setup, Crr per tyre set
-       ridercda rank SESSION [--course ID] [--json FILE]  seconds saved on each course
        ridercda samples [FOLDER]                          copy the sample sessions to a folder
        ridercda --version | --help
 
@@ -81,10 +80,6 @@ def _dispatch(words: list[str]) -> int:
             from ridercda.cli import solve as solving
 
             return solving.command(rest)
-        case "rank":
-            from ridercda.cli import rank as ranking
-
-            return ranking.command(rest)
         case "samples":
             from ridercda.cli import samples as copying
 

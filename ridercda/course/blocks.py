@@ -1,7 +1,7 @@
 """Many riders side by side over one course, in compiled blocks.
 
-All rows of a block lie in one flat array: with rows a constant apart the compiler sees that they do not overlap
-and works on several riders at a time (measured: 12 ns a step and rider, 44 ns without).
+All rows of a block lie in one flat array: with rows a constant apart the compiler sees that they do not
+overlap and works on several riders at a time (measured: 12 ns a step and rider, 44 ns without).
 """
 
 from __future__ import annotations
@@ -19,8 +19,8 @@ IntArray = npt.NDArray[np.int64]
 
 LANES = 64  # riders to a block: its rows stay in the first-level cache
 
-# Rows of the table of riders, the same in a block. Areas are over the moving mass, DRIVE turns watts of the plan
-# into twice the watts at the wheel over the moving mass; NORTH and EAST are where the wind comes from.
+# Rows of the table of riders, the same in a block. Areas are over the moving mass, DRIVE turns watts of the
+# plan into twice the watts at the wheel over the moving mass; NORTH and EAST are where the wind comes from.
 AREA, FALLBACK, SIT_SPEED, CRR, GRIP, DRIVE, NORTH, EAST, PER_MASS, WEIGHT, SHAPE, FALLBACK_SHAPE = range(12)
 RIDER_ROWS = 12
 # Rows a block has beyond them: the state, and what changes with the segment.

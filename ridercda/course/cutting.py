@@ -1,7 +1,7 @@
 """How a course is cut into steps: by riding it once with the step length under error control.
 
-All riders of a study then take the same steps, so what the method leaves of error is common to them and drops out
-of the seconds between two setups.
+All riders of a study then take the same steps, so what the method leaves of error is common to them and
+drops out of the seconds between two setups.
 """
 
 from __future__ import annotations
@@ -118,9 +118,9 @@ def cut_course(
     -------
     steps : ndarray, shape (k, STEP_COLUMNS)
     record : ndarray, shape (k, RECORD_COLUMNS)
-        Position [m], v² [m² s⁻²], time [s] at the end of each step, and the push over half the moving mass that
-        the rider held back or braked away, meaned over the step [m s⁻²]. Time is infinite from where the
-        rider stands.
+        Position [m], v² [m² s⁻²], time [s] at the end of each step, and the push over half the moving mass
+        that the rider held back or braked away, meaned over the step [m s⁻²]. Time is infinite from where
+        the rider stands.
     """
     room = 1024
     steps = np.empty((room, STEP_COLUMNS))

@@ -204,7 +204,8 @@ def course_of_stretches(
     length = np.atleast_1d(np.asarray(lengths, float))
     if length.size == 0 or not np.all(length > 0):
         raise CourseError(
-            f"course {course_id!r}: every stretch needs a positive length, not {np.min(length, initial=0.0):g} m"
+            f"course {course_id!r}: every stretch needs a positive length, not "
+            f"{np.min(length, initial=0.0):g} m"
         )
 
     def along(values: npt.ArrayLike) -> FloatArray:
@@ -268,10 +269,12 @@ def in_laps(course: Course, laps: int) -> Course:
         altitude=join(course.altitude),
         latitude=join(course.latitude),
         longitude=join(course.longitude),
-        **{
-            name: tile(getattr(course, name))
-            for name in ("grade", "heading", "curvature", "crr_factor", "shelter", "speed_limit")
-        },
+        grade=tile(course.grade),
+        heading=tile(course.heading),
+        curvature=tile(course.curvature),
+        crr_factor=tile(course.crr_factor),
+        shelter=tile(course.shelter),
+        speed_limit=tile(course.speed_limit),
     )
 
 

@@ -130,7 +130,7 @@ def yaw_shape(yaw: npt.ArrayLike, cxa: npt.ArrayLike) -> FloatArray:
     area = axial_area(at, yaw, cxa)
     if not area[0] > 0:
         raise CourseError(f"a yaw table needs a positive area at its first angle, not {area[0]:g} m²")
-    return area / area[0]
+    return np.asarray(area / area[0])
 
 
 def plain_shape() -> FloatArray:

@@ -105,7 +105,7 @@ def first_stage(
     roll: float,
     bearing: float,
 ) -> tuple[float, float, float, float, float]:
-    """Return the stage's increments of y and t, 1/(1/(hγ) - J), the derivative of 1/v by y, and y for the next.
+    """Return the increments of y and t, 1/(1/(hγ) - J), the derivative of 1/v by y, and y of the next stage.
 
     Where the grip of a start and not the power limits the push, the push does not depend on the speed.
     """

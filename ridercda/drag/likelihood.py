@@ -351,6 +351,16 @@ def _stepped(model: Model, here: Pass, move: FloatArray) -> Pass | None:
     return None
 
 
+def _noise_bounds(model: Model) -> tuple[FloatArray, FloatArray]:
+    """Return the least and most the logarithms of the noise may be; the floors are those of records of a second."""
+    least, most = np.log(priors.NOISE_LEAST), np.log(priors.NOISE_MOST)
+    if model.day.flat:  # a record is a lap: the noise of its seconds averages out
+        seconds = float(np.median(np.concatenate([run.records.interval for run in model.day.runs])))
+        for which in (at.POWER_NOISE, at.SPEED_NOISE, at.AIR_SPEED_NOISE):
+            least[which] -= 0.5 * np.log(max(seconds, 1.0))
+    return least, most
+
+
 def _moved(model: Model, here: Pass) -> FloatArray:
     """Return the unknowns after the step of a pass."""
     moved = here.parameters.copy()

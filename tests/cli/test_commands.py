@@ -65,7 +65,6 @@ def test_a_day_that_cannot_answer_exits_three_and_writes_json(
         (["solve", ".", "--nonsense"], "--nonsense"),
         (["--nonsense"], "there is no option --nonsense"),
         (["no-such-session"], "neither a command nor a session"),
-        (["rank"], "SESSION"),
     ],
 )
 def test_bad_usage_is_one_message_and_two(

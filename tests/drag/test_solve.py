@@ -45,14 +45,25 @@ def test_the_regression_gives_a_noise_free_day_back(spec: object, seed: int) -> 
         assert crr == pytest.approx(day.truth.crr[tyres], rel=5e-3)
 
 
-@pytest.mark.parametrize("spec", [REFERENCE_DAY, TRACK_DAY], ids=["loop", "track"])
-def test_the_full_model_gives_a_noise_free_day_back(spec: object) -> None:
-    """Its priors on nuisances pull a little; differences are exact to a tenth of a percent of CdA."""
-    day = simulate_day(noise_free(spec), 1)  # type: ignore[arg-type]
+@pytest.mark.parametrize("seed", [1, 2, 3])
+def test_the_full_model_gives_a_noise_free_loop_back(seed: int) -> None:
+    day = simulate_day(noise_free(REFERENCE_DAY), seed)
     estimate = solved(day)
     for setup in estimate.setups:
         assert setup.cda is not None
-        assert setup.cda.value == pytest.approx(day.truth.cda[setup.id], rel=5e-3)
+        assert setup.cda.value == pytest.approx(day.truth.cda[setup.id], rel=1e-3)
+    for tyres in estimate.tyres:
+        assert tyres.crr is not None
+        assert tyres.crr.value == pytest.approx(day.truth.crr[tyres.id], rel=5e-3)
+
+
+def test_a_noise_free_track_comes_back_within_a_percent() -> None:
+    """Air dragged round the track and a meter's zero are never told from drag; their priors pull by up to 1 %."""
+    day = simulate_day(noise_free(TRACK_DAY), 1)
+    estimate = solved(day)
+    for setup in estimate.setups:
+        assert setup.cda is not None
+        assert setup.cda.value == pytest.approx(day.truth.cda[setup.id], rel=1e-2)
     for difference in estimate.differences:
         true = day.truth.cda[difference.setup] - day.truth.cda[difference.against]
         assert difference.cda is not None
