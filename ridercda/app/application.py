@@ -32,7 +32,7 @@ class Dress(QObject):
         super().__init__(parent)
         self._app, self._theme = app, theme
         self._pictures = QTemporaryDir()
-        theme.changed.connect(self.apply)
+        theme.dressing.connect(self.apply)
         self.apply()
 
     def apply(self) -> None:

@@ -10,6 +10,7 @@ from PySide6.QtCore import QObject, Signal
 
 from ridercda.app import tasks
 from ridercda.app.document import SessionDocument
+from ridercda.app.fault_log import noted
 from ridercda.app.worker import Job, Worker
 from ridercda.rides.ride import Ride
 from ridercda.session.document import RideEntry, Session
@@ -125,7 +126,7 @@ class RideShelf(QObject):
         job.progressed.connect(lambda done, total: self._on_job_progressed(entry, done, total))
         job.finished.connect(lambda ride: self._on_job_finished(entry, ride))
         job.failed.connect(lambda message: self._on_job_failed(entry, message))
-        job.faulted.connect(lambda _: self._on_job_failed(entry, self.tr("This file could not be read.")))
+        job.faulted.connect(lambda trace: self._on_job_faulted(entry, trace))
 
     def _is_current(self, entry: RideEntry) -> bool:
         item = self._items.get(entry.id)
@@ -146,6 +147,10 @@ class RideShelf(QObject):
         """Take a ride's arrays."""
         self._items[ride_id] = ShelfItem(self._document.session.ride(ride_id), Shelved.READY, ride)
         self.changed.emit()
+
+    def _on_job_faulted(self, entry: RideEntry, trace: str) -> None:
+        words = self.tr("Reading this file failed by a fault of the program. It is written down in {}")
+        self._on_job_failed(entry, words.format(noted(trace)))
 
     def _on_job_failed(self, entry: RideEntry, message: str) -> None:
         if self._is_current(entry):

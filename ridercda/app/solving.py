@@ -9,6 +9,7 @@ from PySide6.QtCore import QObject, QTimer, Signal
 
 from ridercda.app import tasks
 from ridercda.app.document import SessionDocument
+from ridercda.app.fault_log import noted
 from ridercda.app.shelf import RideShelf, Shelved
 from ridercda.app.worker import Job, Worker
 from ridercda.drag.estimate import Estimate
@@ -143,7 +144,8 @@ class Solving(QObject):
 
     def _on_job_faulted(self, trace: str) -> None:
         self._job, self._asked, self._solved = None, None, None
-        self._tell(State.FAILED, self.tr("The estimate failed: {}").format(trace.strip().splitlines()[-1]))
+        words = self.tr("This is a fault of the program, not of your data. It is written down in {}")
+        self._tell(State.FAILED, words.format(noted(trace)))
 
     def _tell(self, state: State, message: str = "") -> None:
         self.state, self.message = state, message

@@ -43,6 +43,7 @@ def load_fonts() -> None:
 class Theme(QObject):
     """Colours, fonts and sizes now in force; views ask it when they paint, so a change needs no rebuilding."""
 
+    dressing = Signal()  # the application's own look changes first, because that drops the fonts of its parts
     changed = Signal()
 
     def __init__(self, mode: Mode = Mode.SYSTEM, zoom: float = 1.0, parent: QObject | None = None) -> None:
@@ -89,7 +90,7 @@ class Theme(QObject):
         zoom = min(ZOOMS, key=lambda each: abs(each - zoom))
         if zoom != self._zoom:
             self._zoom = zoom
-            self.changed.emit()
+            self._tell()
 
     def _on_system_scheme_changed(self) -> None:
         if self._mode is Mode.SYSTEM:
@@ -97,6 +98,10 @@ class Theme(QObject):
 
     def _take_roles(self) -> None:
         self._roles = DARK if self.is_dark else LIGHT
+        self._tell()
+
+    def _tell(self) -> None:
+        self.dressing.emit()
         self.changed.emit()
 
     def colour(self, role: str, alpha: float = 1.0) -> QColor:

@@ -302,3 +302,12 @@ def test_setups_are_assigned_by_one_typed_order(full: MainWindow) -> None:
     assert "there are 12" in full.notice.accessibleName()
     full.runs.assign_in_order("AXA")
     assert full.desk.session is session
+
+
+def test_our_own_fault_is_told_in_one_sentence_and_written_down(full: MainWindow, tmp_path: Path) -> None:
+    full.desk.solving._on_job_faulted('Traceback\n  File "x"\nZeroDivisionError: our own fault\n')
+    assert full.desk.solving.state is State.FAILED
+    assert "ZeroDivisionError" not in full.desk.solving.message
+    log = Path(full.desk.solving.message.rpartition(" ")[2])
+    assert "ZeroDivisionError: our own fault" in log.read_text(encoding="utf-8")
+    assert tmp_path in log.parents

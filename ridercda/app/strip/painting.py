@@ -151,6 +151,7 @@ def draw_blocks(
         left, right = block_extent(view, run)
         if right < view.left or left > view.right:
             continue
+        left, right = max(left, view.left - 8), min(right, view.right + 8)  # the letter stays in sight
         gap = 0.5 if right - left > 4 else 0.0
         head = QRectF(left + gap, bands.letters.top(), right - left - 2 * gap, bands.letters.height())
         _draw_head(painter, theme, run, head)

@@ -123,6 +123,7 @@ class QuantityField(QWidget):
     def restore(self) -> None:
         """Show the value that holds, whatever was typed."""
         self.line.setText("" if self._value is None else self.text_of(self._value))
+        self.line.setCursorPosition(0)
         self.line.setModified(False)
         placeholder = ""
         if self._assumed is not None and self._assumed.value is not None:
@@ -195,6 +196,7 @@ class TextField(QLineEdit):
         if text != self._shown or not self.isModified():
             self._shown = text
             self.setText(text)
+            self.setCursorPosition(0)
             self.setModified(False)
 
     def _on_finished(self) -> None:

@@ -66,19 +66,19 @@ class IntervalChart(Chart):
         """Show other figures."""
         if picture != self._picture:
             self._picture = picture
-            self.setMaximumHeight(self.theme.px(80 + max(3, len(picture.rows)) * 76))
+            self.setMaximumHeight(self.theme.px(60 + max(3, len(picture.rows)) * 76))
             self.updateGeometry()
             self.update()
 
     def sizeHint(self) -> QSize:
         """Ask for a line per row, slim enough that a page seldom scrolls; what room there is gets used."""
         rows = max(2, len(self._picture.rows))
-        return QSize(self.theme.px(560), self.theme.px(72 + rows * 30))
+        return QSize(self.theme.px(560), self.theme.px(56 + rows * 34))
 
     def minimumSizeHint(self) -> QSize:
         """Ask for lines that still stand apart."""
         rows = max(2, len(self._picture.rows))
-        return QSize(self.theme.px(self.least.width()), self.theme.px(64 + rows * 20))
+        return QSize(self.theme.px(self.least.width()), self.theme.px(56 + rows * 20))
 
     def table(self) -> ChartTable:
         """Return setup, words, difference and interval as rows."""
@@ -109,10 +109,11 @@ class IntervalChart(Chart):
             for row in picture.rows
         )
         column_width = px(84)
-        left = area.left() + px(36) + min(words_width + px(24), area.width() * 0.32)
+        axis_width = drawing.width_of(small, picture.axis) + px(44)  # stands left of the first tick
+        left = area.left() + max(px(36) + min(words_width + px(24), area.width() * 0.32), axis_width)
         right = area.right() - px(24) - column_width * len(picture.columns)
         top = area.top() + (px(32) if picture.second or picture.columns else px(8))
-        bottom = area.bottom() - px(44)
+        bottom = area.bottom() - px(24)
         low, high = self._range()
         across = Scale(low, high, left, right)
         pitch = (bottom - top) / len(picture.rows)
@@ -159,7 +160,7 @@ class IntervalChart(Chart):
             painter.drawLine(QPointF(x, top), QPointF(x, bottom))
             words = "0" if zero else plain(tick, decimals_of(step), signed=True)
             drawing.label(painter, theme, x, bottom + px(12), words)
-        drawing.label(painter, theme, across.last, bottom + px(32), picture.axis, drawing.RIGHT)
+        drawing.label(painter, theme, area.left(), bottom + px(12), picture.axis, drawing.LEFT)
         if picture.second:
             second = picture.second
             low, high = sorted((across.low * second.factor, across.high * second.factor))
