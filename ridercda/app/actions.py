@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QCoreApplication
 
+from ridercda.app.dialogs import UnitsDialog, show_about, show_cautions, show_first_steps, show_keys
 from ridercda.app.theme import ZOOMS, Mode
 from ridercda.units import UnitSystem
 
@@ -265,16 +266,17 @@ def view_actions() -> tuple[Action, ...]:
         ),
         *(_mode_action(mode, words) for mode, words in modes),
         *(_units_action(system, words) for system, words in systems),
-        Action("units.each", _tr("Units for each quantity…"), VIEW, lambda w: w.ask_units()),
+        Action("units.each", _tr("Units for each quantity…"), VIEW, lambda w: UnitsDialog(w, w.desk).exec()),
     )
 
 
 def help_actions() -> tuple[Action, ...]:
     """Return what explains."""
     return (
-        Action("help.keys", _tr("Keyboard"), HELP, lambda w: w.show_keys(), "F1"),
-        Action("help.cautions", _tr("Cautions"), HELP, lambda w: w.show_cautions()),
-        Action("help.about", _tr("About RiderCdA"), HELP, lambda w: w.show_about()),
+        Action("help.first_steps", _tr("First figures, step by step"), HELP, lambda w: show_first_steps(w)),
+        Action("help.keys", _tr("Keyboard"), HELP, lambda w: show_keys(w, w.menus.actions_table), "F1"),
+        Action("help.cautions", _tr("Cautions"), HELP, lambda w: show_cautions(w)),
+        Action("help.about", _tr("About RiderCdA"), HELP, lambda w: show_about(w)),
     )
 
 

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QKeySequence
 from PySide6.QtWidgets import (
@@ -15,7 +17,6 @@ from PySide6.QtWidgets import (
 )
 
 import ridercda
-from ridercda.app.actions import Action
 from ridercda.app.cautions import caution_texts
 from ridercda.app.desk import Desk
 from ridercda.app.quantities import CHOOSABLE
@@ -25,6 +26,9 @@ from ridercda.app.widgets.form import Choice, Form
 from ridercda.rides.ride import CHANNELS
 from ridercda.session import edits
 from ridercda.units import UnitSystem, kind_units
+
+if TYPE_CHECKING:
+    from ridercda.app.actions import Action
 
 
 class _Framed(QDialog):
@@ -120,9 +124,48 @@ def show_keys(parent: QWidget, actions: tuple[Action, ...]) -> None:
     native = QKeySequence.SequenceFormat.NativeText
     menu = tuple((QKeySequence(a.shortcut).toString(native), a.text) for a in actions if a.shortcut)
     parts = ((tr("In the day strip"), strip), (tr("Everywhere"), menu))
+    text = "".join(f"<h3>{title}</h3>{_key_table(rows)}" for title, rows in parts)
+    _show_text(parent, tr("Keyboard"), text)
+
+
+def _key_table(rows: tuple[tuple[str, str], ...]) -> str:
+    cells = (
+        f"<tr><td style='padding:2px 16px 2px 0'><b>{keys}</b></td><td>{words}</td></tr>"
+        for keys, words in rows
+    )
+    return f"<table>{''.join(cells)}</table>"
+
+
+def show_first_steps(parent: QWidget) -> None:
+    """Show the way from ride files to figures, by mouse and by keyboard."""
+    tr = parent.tr
+    mouse = (
+        tr("Drop the ride files of the day into the window, or press Add ride files… on the start page."),
+        tr(
+            "On Rides, fill in the mass of the rider with kit and of the bike with bottles: 75.5 kg, 165 lb, as you like."
+        ),
+        tr("On Runs, press Accept: the runs found in the rides stand dashed in the day strip."),
+        tr("Write the order in which the setups were ridden, such as A B C C B A, and press Enter."),
+        tr("On Drag, read the answer. It follows every further change by itself."),
+    )
+    keyboard = (
+        tr("Ctrl+Shift+O, the names of the ride files, Enter."),
+        tr("Ctrl+1, the rider's mass, Tab, the bike's mass, Enter."),
+        tr("Ctrl+Shift+A accepts the proposed runs."),
+        tr("F6 goes to the day strip: → and a letter for each run, such as → A → B → C."),
+        tr("Ctrl+3 shows the answer; Ctrl+S saves."),
+    )
+    parts = ((tr("By mouse"), mouse), (tr("By keyboard alone"), keyboard))
+    text = "".join(
+        f"<h3>{title}</h3><ol>{''.join(f'<li>{step}</li>' for step in steps)}</ol>" for title, steps in parts
+    )
+    _show_text(parent, tr("First figures, step by step"), text)
+
+
+def _show_text(parent: QWidget, title: str, text: str) -> None:
     dialog = QDialog(parent)
-    dialog.setWindowTitle(tr("Keyboard"))
-    label = QLabel("".join(f"<h3>{title}</h3>{_key_table(rows)}" for title, rows in parts))
+    dialog.setWindowTitle(title)
+    label = QLabel(text)
     label.setTextFormat(Qt.TextFormat.RichText)
     label.setWordWrap(True)
     label.setContentsMargins(16, 8, 16, 8)
@@ -133,14 +176,6 @@ def show_keys(parent: QWidget, actions: tuple[Action, ...]) -> None:
     layout.addWidget(area)
     dialog.resize(560, 620)
     dialog.exec()
-
-
-def _key_table(rows: tuple[tuple[str, str], ...]) -> str:
-    cells = (
-        f"<tr><td style='padding:2px 16px 2px 0'><b>{keys}</b></td><td>{words}</td></tr>"
-        for keys, words in rows
-    )
-    return f"<table>{''.join(cells)}</table>"
 
 
 def show_cautions(parent: QWidget) -> None:

@@ -43,6 +43,7 @@ SHOTS = (
 def pictures(folder: Path) -> Iterator[Path]:
     """Write every picture and tell of each."""
     from PySide6.QtCore import QSettings
+    from PySide6.QtGui import QImage, QImageWriter
 
     from ridercda.app.application import Dress, application
     from ridercda.app.desk import build_desk
@@ -88,7 +89,9 @@ def pictures(folder: Path) -> Iterator[Path]:
                         for _ in range(6):
                             app.processEvents()
                         path = folder / f"{shot.name}-{mode.value}-{width}x{height}.png"
-                        window.grab().save(str(path))
+                        writer = QImageWriter(str(path), b"png")
+                        writer.setCompression(100)
+                        writer.write(window.grab().toImage().convertToFormat(QImage.Format.Format_RGB888))
                         yield path
         finally:
             desk.document.undo_stack.setClean()

@@ -11,7 +11,7 @@ from PySide6.QtWidgets import QMainWindow, QStackedWidget, QVBoxLayout, QWidget
 from ridercda.app.actions import all_actions
 from ridercda.app.autosave import Autosave, Kept, drop, unsaved_work
 from ridercda.app.desk import Desk
-from ridercda.app.dialogs import ColumnsDialog, UnitsDialog, show_about, show_cautions, show_keys
+from ridercda.app.dialogs import ColumnsDialog
 from ridercda.app.files import RIDE_SUFFIXES, SessionFiles
 from ridercda.app.header import Header
 from ridercda.app.menus import Menus
@@ -201,22 +201,6 @@ class MainWindow(QMainWindow):
     def show_palette(self) -> None:
         """Show the command palette."""
         Palette(self, self.menus.actions_table).show()
-
-    def ask_units(self) -> None:
-        """Ask for the unit of each quantity."""
-        UnitsDialog(self, self.desk).exec()
-
-    def show_keys(self) -> None:
-        """Show what the keyboard does."""
-        show_keys(self, self.menus.actions_table)
-
-    def show_cautions(self) -> None:
-        """Show the cautions."""
-        show_cautions(self)
-
-    def show_about(self) -> None:
-        """Say what this is."""
-        show_about(self)
 
     def quit(self) -> None:
         """Close the window."""

@@ -14,7 +14,7 @@ from ridercda.app.run_edits import RunEdits
 from ridercda.app.side.day_form import TyresForm
 from ridercda.app.side.quantity_rows import Figure, FigureRows
 from ridercda.app.widgets.field import TextField
-from ridercda.app.widgets.form import Form
+from ridercda.app.widgets.form import Choice, Form
 from ridercda.app.widgets.links import link, link_line
 from ridercda.session import edits
 from ridercda.session.document import Session, Setup
@@ -62,6 +62,7 @@ class SetupForm(Form):
                     default_key=key,
                 )
             )
+        self._build_elsewhere()
         self._baseline = link(self.tr("Make baseline"))
         self._baseline.clicked.connect(self._on_baseline_clicked)
         self._remove = link(self.tr("Remove setup"))
@@ -72,6 +73,27 @@ class SetupForm(Form):
         desk.document.session_changed.connect(self.refresh)
         desk.selection.changed.connect(lambda: self.refresh(desk.session))
         self.refresh(desk.session)
+
+    def _build_elsewhere(self) -> None:
+        """Add what is known of a setup that was not tested today."""
+        self.heading(self.tr("Known from elsewhere"))
+        for words, name in (
+            (self.tr("CdA"), "cda"),
+            (self.tr("Its uncertainty (sd)"), "cda_sd"),
+            (self.tr("or difference of CdA"), "cda_difference"),
+            (self.tr("Its uncertainty (sd)"), "cda_difference_sd"),
+        ):
+            get, put = partial(self._get, name), partial(self._put, name)
+            self._rows.add(Figure(words, Kind.AREA, "Setup", name, get, put))
+        self._from = Choice(self.theme, (("", ""),))
+        self._from.activated.connect(self._on_from_activated)
+        self.row(self.tr("against"), self._from)
+
+    def _on_from_activated(self) -> None:
+        other = self._from.key
+        self._change(
+            self.tr("Set what the difference is against"), lambda s: replace(s, difference_from=other)
+        )
 
     def _setup(self, session: Session) -> Setup | None:
         return next((s for s in session.setups if s.id == self._desk.selection.setup), None)
@@ -115,6 +137,8 @@ class SetupForm(Form):
         for name, field in self._texts.items():
             field.set_value(getattr(setup, name))
         self._texts["letter"].setPlaceholderText(badge.letter)
+        others = [(key, badge.name) for key, badge in badges(session).items() if key != setup.id]
+        self._from.set_options((("", self.tr("not said")), *others), setup.difference_from)
         baseline = session.baseline
         self._baseline.setEnabled(baseline is None or baseline.id != setup.id)
         self._remove.setEnabled(not any(run.setup == setup.id for run in session.runs))

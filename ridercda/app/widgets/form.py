@@ -110,6 +110,16 @@ class Choice(QComboBox):
         self.setSizeAdjustPolicy(QComboBox.SizeAdjustPolicy.AdjustToMinimumContentsLengthWithIcon)
         theme.changed.connect(lambda: self.setFont(theme.font()))
 
+    def set_options(self, options: tuple[tuple[str, str], ...], key: str) -> None:
+        """Offer other choices, and show one, without telling anybody."""
+        blocked = self.blockSignals(True)
+        if options != tuple((self.itemData(k), self.itemText(k)) for k in range(self.count())):
+            self.clear()
+            for each, words in options:
+                self.addItem(words, each)
+        self.setCurrentIndex(max(0, self.findData(key)))
+        self.blockSignals(blocked)
+
     def set_key(self, key: str) -> None:
         """Show a choice without telling anybody."""
         blocked = self.blockSignals(True)
