@@ -19,7 +19,12 @@ from ridercda.units import (
     to_display,
 )
 
-CHOOSABLE = tuple(kind for kind in Kind if kind_units(kind).metric[0] != kind_units(kind).imperial[0])
+_NEVER_SHOWN = (Kind.ACCELERATION, Kind.FORCE, Kind.TEMPERATURE_DIFFERENCE)
+CHOOSABLE = tuple(
+    kind
+    for kind in Kind
+    if kind not in _NEVER_SHOWN and kind_units(kind).metric[0] != kind_units(kind).imperial[0]
+)
 """The quantities for which the two systems differ."""
 
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 import importlib.util
 import os
 import sys
+import threading
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -80,13 +81,14 @@ def day(desk: Desk) -> Desk:
 
 @pytest.fixture(autouse=True)
 def _nothing_left_open(qapp: QApplication) -> Iterator[None]:
-    """Fail a test that leaves a window open."""
+    """Fail a test that leaves a window open, or a thread that talks to another process."""
     yield
-    left = [widget for widget in qapp.topLevelWidgets() if widget.isVisible()]
-    for widget in left:
+    windows = [widget for widget in qapp.topLevelWidgets() if widget.isVisible()]
+    threads = [thread.name for thread in threading.enumerate() if thread.name.startswith("ridercda-")]
+    for widget in windows:
         widget.close()
-        widget.deleteLater()
-    qapp.processEvents()
+    assert not windows
+    assert not threads
 
 
 @pytest.fixture(autouse=True)

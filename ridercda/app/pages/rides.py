@@ -55,9 +55,11 @@ class RidesPage(Page):
         self._columns_button.clicked.connect(lambda: self.asked.emit("ride.columns", desk.selection.ride))
         self._find = link(self.tr("Find the file…"))
         self._find.clicked.connect(self._on_find_clicked)
+        self._again = link(self.tr("Read again"))
+        self._again.clicked.connect(lambda: desk.shelf.read_again(desk.selection.ride))
         self._remove = link(self.tr("Remove ride"))
         self._remove.clicked.connect(self._on_remove_clicked)
-        self._buttons = (add, self._columns_button, self._find, self._remove)
+        self._buttons = (add, self._columns_button, self._find, self._again, self._remove)
         self._rides.body.addLayout(link_line(self.theme, *self._buttons))
         self._message = QLabel()
         self._message.setWordWrap(True)
@@ -79,6 +81,7 @@ class RidesPage(Page):
         layout.setSpacing(px(12))
         layout.addLayout(left, 7)
         layout.addWidget(self._map_card, 3)
+        self.follow(desk.shelf.progressed)
 
     def _columns(self) -> tuple[Column[RideRow], ...]:
         return (
@@ -129,6 +132,7 @@ class RidesPage(Page):
         self._table.show_keys((picked,) if picked else ())
         item = desk.shelf.item(picked) if picked else None
         self._find.setVisible(item is not None and item.state in (Shelved.MISSING, Shelved.FAILED))
+        self._again.setVisible(item is not None and item.state is Shelved.FAILED)
         self._columns_button.setVisible(item is not None and _is_text(item))
         self._remove.setEnabled(item is not None)
         self._message.setFont(self.theme.font(Type.AXIS))
@@ -144,7 +148,7 @@ class RidesPage(Page):
     def _row(self, item: ShelfItem) -> RideRow:
         ride = item.ride
         words = {
-            Shelved.READING: self.tr("reading"),
+            Shelved.READING: self.tr("reading, {} %").format(round(100 * item.progress)),
             Shelved.READY: self.tr("read"),
             Shelved.MISSING: self.tr("file missing"),
             Shelved.FAILED: self.tr("not read"),
