@@ -291,7 +291,6 @@ def _points(
             continue
         badge = badges[run.setup]
         level = levels[run.setup]
-        low, high = run.cda.interval
         points.append(
             Point(
                 run.id,
@@ -299,14 +298,8 @@ def _points(
                 badge.letter,
                 x,
                 run.cda.value - level,
-                (low - level, high - level),
                 run.id in desk.selection.runs,
                 _tr("Run {}").format(run.id),
             )
         )
     return tuple(points)
-
-
-def run_figures(estimate: Estimate | None) -> dict[str, RunEstimate]:
-    """Return the figures of each run by id."""
-    return {run.id: run for run in estimate.runs} if estimate else {}

@@ -98,7 +98,7 @@ class LineChart(Chart):
             return []
         (x_low, x_high), (low, high) = self._ranges()
         top, bottom = area.top() + px(22), area.bottom() - px(40)
-        count = max(2, int((bottom - top) / px(40)))
+        count = max(2, int((bottom - top) / px(28)))
         step = tick_step(low, high, count)
         y_ticks = ticks(low, high, count)
         names = [plain(tick, decimals_of(step)) for tick in y_ticks]

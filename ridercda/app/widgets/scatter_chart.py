@@ -24,13 +24,12 @@ class Point:
     letter: str
     x: float
     y: float
-    interval: tuple[float, float]
     picked: bool
     tip: str
 
 
 class ScatterChart(Chart):
-    """Points with whiskers."""
+    """Points; what their intervals have in common would hide how they differ, so none is drawn."""
 
     least = QSize(220, 150)
 
@@ -47,13 +46,8 @@ class ScatterChart(Chart):
 
     def table(self) -> ChartTable:
         """Return a row per run."""
-        rows = tuple(
-            (p.key, p.letter, f"{p.x:.6g}", f"{p.y:.6g}", f"{p.interval[0]:.6g}", f"{p.interval[1]:.6g}")
-            for p in self._points
-        )
-        return ChartTable(
-            (self.tr("Run"), self.tr("Setup"), *self._axes, self.tr("Low"), self.tr("High")), rows
-        )
+        rows = tuple((p.key, p.letter, f"{p.x:.6g}", f"{p.y:.6g}") for p in self._points)
+        return ChartTable((self.tr("Run"), self.tr("Setup"), *self._axes), rows)
 
     def draw(self, painter: QPainter, area: QRectF) -> list[Mark]:
         """Draw grid, zero line, whiskers and chips."""
@@ -68,9 +62,8 @@ class ScatterChart(Chart):
                 drawing.CENTRE,
             )
             return []
-        low, high = padded(
-            min(0.0, *(p.interval[0] for p in self._points)), max(0.0, *(p.interval[1] for p in self._points))
-        )
+        heights = [0.0, *(p.y for p in self._points)]
+        low, high = padded(min(heights), max(heights), 0.15)
         x_low, x_high = padded(min(p.x for p in self._points), max(p.x for p in self._points))
         top, bottom = area.top() + px(22), area.bottom() - px(42)
         count = max(2, int((bottom - top) / px(44)))
@@ -100,10 +93,6 @@ class ScatterChart(Chart):
         theme, px = self.theme, self.theme.px
         size = px(15)
         centre = QPointF(along(point.x), up(point.y))
-        painter.setPen(QPen(QColor(point.chip.fill), px(1.4)))
-        painter.drawLine(
-            QPointF(centre.x(), up(point.interval[0])), QPointF(centre.x(), up(point.interval[1]))
-        )
         rect = QRectF(centre.x() - size / 2, centre.y() - size / 2, size, size)
         if point.picked:
             drawing.focus_frame(painter, theme, rect.adjusted(-px(4), -px(4), px(4), px(4)))
