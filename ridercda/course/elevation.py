@@ -190,9 +190,12 @@ def _fitted_heights(knots: FloatArray, distance: FloatArray, altitude: FloatArra
     right = (distance - knots[cell]) / (knots[cell + 1] - knots[cell])
     left = 1.0 - right
     n = knots.size
-    diagonal: FloatArray = np.bincount(cell, left**2, n) + np.bincount(cell + 1, right**2, n)
+    diagonal = np.asarray(
+        np.bincount(cell, left**2, n) + np.bincount(cell + 1, right**2, n), dtype=np.float64
+    )
     beside = np.bincount(cell, left * right, n)[:-1]
-    wanted: FloatArray = np.bincount(cell, left * altitude, n) + np.bincount(cell + 1, right * altitude, n)
+    at_knots = np.bincount(cell, left * altitude, n) + np.bincount(cell + 1, right * altitude, n)
+    wanted = np.asarray(at_knots, dtype=np.float64)
     # A trace of the straight line through the points keeps knots without points of their own in place.
     between = np.interp(knots, distance, altitude)
     diagonal += 1e-3
